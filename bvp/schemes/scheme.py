@@ -1,0 +1,186 @@
+"""What a difference scheme is: a few formulas of nodal values, said in the formula language.
+
+A scheme is data; `bvp.schemes.difference` is the one engine that turns an equation into a difference equation with
+it. What a formula cannot say (coefficients that are integrals, a slope of the source) is said by a subclass that
+overrides `row`, `end_derivative` or `nodal_weights`: the protocol that users have too.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field, replace
+from fractions import Fraction
+from typing import TYPE_CHECKING
+
+import numpy as np
+import numpy.typing as npt
+
+from bvp.errors import SchemeError
+from bvp.formula import parse, write
+from bvp.formula.tree import Indexed, Name, Node, Number, names_in, transform, walk
+
+if TYPE_CHECKING:
+    from bvp.formula import Vocabulary
+    from bvp.problem import Equation, Problem
+
+Array = npt.NDArray[np.float64]
+
+STEP = Name("#step")  # the step of a uniform grid, a leaf that nobody can type
+FORMULA_KEYS = ("denominator", "flux", "volume", "axis", "first", "end", "source", "right_hand_side", "equation")
+KEYS = (*FORMULA_KEYS, "replace")
+
+
+@dataclass(frozen=True)
+class Shape:
+    """Where a row stands: on which kind of grid, for which problem, at the axis or not."""
+
+    problem: Problem
+    uniform: bool
+    axis: bool = False
+
+    @property
+    def exponent(self) -> int:
+        """s of the geometry."""
+        return self.problem.exponent
+
+
+@dataclass(frozen=True)
+class Scheme:
+    """A difference scheme, stated by formulas of u[k-1], u[k], u[k+1], x[…] and the step; None means the standard one.
+
+    denominator : in place of h^2 in the second difference. flux : area times gradient between k and k+1, with
+    `volume` and `axis` for the cell. first : for u'. end : for a derivative in a condition. source : what stands for
+    u undifferentiated and outside a flux. right_hand_side : what stands for the part without derivatives, f.
+    replace : a term for a term. equation : the whole difference equation.
+    """
+
+    name: str
+    about: str
+    texts: Mapping[str, str] = field(default_factory=dict)
+    replacements: Mapping[str, str] = field(default_factory=dict)
+    origin: str = ""
+    typed: bool = False
+
+    # -- what the engine asks ---------------------------------------------------------------------------------------
+
+    def formula(self, key: str, problem: Problem, unknown: str) -> Node | None:
+        """One of its formulas as a tree in the problem's own names, None where the scheme leaves the standard one."""
+        text = self.texts.get(key)
+        if text is None:
+            return None
+        place = f"{self.origin or self.name}, {key}"
+        tree = parse(text, "scheme", scheme_vocabulary(problem.vocabulary), place)
+        return in_names_of(tree, problem, unknown)
+
+    def replaced_terms(self, problem: Problem, unknown: str) -> list[tuple[Node, Node]]:
+        """Its pairs of a term and what stands for it."""
+        pairs = []
+        for term, text in self.replacements.items():
+            place = f"{self.origin or self.name}, replace"
+            left = parse(term, "equation", _with_stand_ins(problem.vocabulary), place)
+            right = parse(text, "scheme", scheme_vocabulary(problem.vocabulary), place)
+            pairs.append((in_names_of(left, problem, unknown), in_names_of(right, problem, unknown)))
+        return pairs
+
+    def needs_uniform_grid(self) -> bool:
+        """Whether its formulas hold the step, or a denominator, which have a meaning on uniform grids only."""
+        return "denominator" in self.texts or any(_holds_step(text) for text in [*self.texts.values(), *self.replacements.values()])
+
+    def row(self, equation: Equation, unknown: str, shape: Shape) -> Node:
+        """The difference equation at node k."""
+        from bvp.schemes.difference import difference_row
+
+        return difference_row(self, equation, unknown, shape)
+
+    def end_derivative(self, unknown: str, equation: Equation, shape: Shape) -> Node:
+        """What stands for u' at an end, where a condition holds it; node k is the end, k-1 or k+1 the ghost beyond it."""
+        from bvp.schemes.difference import standard_first
+
+        return self.formula("end", shape.problem, unknown) or standard_first(unknown, shape)
+
+    def nodal_weights(self, nodes: Array, exponent: int) -> dict[str, Array]:
+        """Coefficients by node that its rows hold as Indexed(name, 0); nodes with ghosts, physical, shape (N + 3,)."""
+        return {}
+
+    def with_origin(self, origin: str) -> Scheme:
+        """The same scheme, its messages opening with another place."""
+        return replace(self, origin=origin)
+
+
+def scheme_vocabulary(vocabulary: Vocabulary) -> Vocabulary:
+    """The vocabulary of a case with the stand-ins of a scheme: u and x for any unknown and coordinate, f, h or step."""
+    return vocabulary
+
+
+def _with_stand_ins(vocabulary: Vocabulary) -> Vocabulary:
+    extra = tuple(name for name in ("u",) if name not in vocabulary.all_names())
+    coordinate = vocabulary.coordinate
+    return replace(vocabulary, unknowns=(*vocabulary.unknowns, *extra), coordinate=coordinate)
+
+
+def in_names_of(tree: Node, problem: Problem, unknown: str) -> Node:
+    """u, x, h and step of a scheme as the unknown, the coordinate and the step of the problem."""
+    own = {*problem.unknowns, problem.coordinate, *problem.parameters, *problem.where}
+
+    def meant(name: str) -> str:
+        if name in own:
+            return name
+        return {"u": unknown, "x": problem.coordinate}.get(name, name)
+
+    def change(node: Node) -> Node | None:
+        if isinstance(node, Indexed):
+            return Indexed(meant(node.name), node.offset, node.place)
+        if isinstance(node, Name):
+            if node.name in ("h", "step") and node.name not in own:
+                return STEP
+            return Name(meant(node.name), node.place)
+        return None
+
+    return transform(tree, change)
+
+
+def at_node(tree: Node, offset: int, problem: Problem) -> Node:
+    """A pointwise formula at node k + offset: every unknown and the coordinate with that index."""
+    pointwise = {*problem.unknowns, problem.coordinate}
+    return transform(tree, lambda node: Indexed(node.name, Fraction(offset)) if isinstance(node, Name) and node.name in pointwise else None)
+
+
+def shifted(tree: Node, offset: int) -> Node:
+    """A formula of nodal values moved by whole nodes."""
+    return transform(tree, lambda node: Indexed(node.name, node.offset + offset) if isinstance(node, Indexed) else None)
+
+
+def _holds_step(text: str) -> bool:
+    import re
+
+    return re.search(r"\b(h|step)\b", text) is not None
+
+
+def check_typed(name: str, keys: Mapping[str, object], origin: str) -> None:
+    """SchemeError unless every key is one that a scheme may have, with the right kind of value."""
+    from bvp.errors import nearest
+
+    for key, value in keys.items():
+        if key not in KEYS:
+            raise SchemeError(f'{origin}: "{key}" is no key of a scheme. {nearest(key, list(KEYS))}')
+        if key == "replace":
+            if not isinstance(value, Mapping) or not all(isinstance(text, str) for text in value.values()):
+                raise SchemeError(f'{origin}: "replace" is {value!r}.\nExpected: a table of a term for a term, such as {{"u^2" = "u[k]*u[k+1]"}}.')
+        elif not isinstance(value, str):
+            raise SchemeError(f'{origin}: "{key}" is {value!r}.\nExpected: a formula in quotes.')
+    if not keys:
+        raise SchemeError(f'{origin}: the scheme "{name}" has no formula.\nExpected: one of {", ".join(KEYS)}.')
+    if "equation" in keys and set(keys) - {"equation", "end", "axis"}:
+        extra = sorted(set(keys) - {"equation", "end", "axis"})[0]
+        raise SchemeError(f'{origin}: "equation" is the whole difference equation, and "{extra}" would change a part of it.\nGive one or the other.')
+    for key in ("volume",):
+        if key in keys and "flux" not in keys:
+            raise SchemeError(f'{origin}: "{key}" belongs to a "flux", which is missing.\nGive both, or neither.')
+
+
+def constant(value: float) -> Node:
+    """A number as a tree."""
+    return Number(value)
+
+
+__all__ = ["KEYS", "STEP", "Scheme", "Shape", "at_node", "check_typed", "in_names_of", "names_in", "shifted", "walk", "write"]
