@@ -1,0 +1,1 @@
+"""Parts of the drawing of a branch; `continuation.plot` puts them together."""
