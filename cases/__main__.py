@@ -1,0 +1,7 @@
+"""`python -m cases …` is the command `hairpin …`."""
+
+import sys
+
+from cases.cli import main
+
+sys.exit(main())
