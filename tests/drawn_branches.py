@@ -150,3 +150,16 @@ def physical() -> Branch:
 def two_points() -> Branch:
     """The shortest branch there is."""
     return branch_of(np.array([0.0, 0.1]), {"max(u)": np.array([0.0, 0.012])}, [0, 0], np.array([0.0, 0.1]), ended="interrupted")
+
+
+def near_inflexion() -> Branch:
+    """Two turning points 0.03 % apart in the parameter, as close on paper as makes no difference."""
+    return parametric(lambda s: float(1 + s + 0.127 * np.sin(8 * s)), lambda s: s, (0.0, 1.0), 80, 1e-8)
+
+
+def tiny_values() -> Branch:
+    """A parameter of 1e-11 with a unit and a name that take room."""
+    return parametric(
+        lambda s: 3e-11 * s * (2 - s), lambda s: 5 * s, (0.0, 1.9), 40, 6e-20, ended="until",
+        units={"lam": "mol/(m^3 s)"}, labels={"lam": "a rate that has a rather long name"},
+    )  # fmt: skip

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 from fractions import Fraction
 from typing import Any
 
@@ -44,8 +44,6 @@ class Draft:
     closed_origin: str = "closed form"
     energy: EnergyIntegral | None = None
     collocation: bool = True
-    largest: Callable[[], list[Any]] | None = None
-    extra: Mapping[str, Any] = field(default_factory=dict)
 
 
 def source_of(form: str, f: Any, k: Any = sympy.Integer(1)) -> Any:

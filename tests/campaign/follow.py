@@ -77,6 +77,8 @@ def follow(model: Model, start: float, direction: str, wanted: int = 1, beyond: 
                 break
             continue
         if turned[-1] * tangent[-1] < 0:
+            if len(turnings) >= wanted:  # a further one is nobody's business, and the points may not resolve it
+                break
             half = np.append(y + found[0], lam + found[1]) / 2
             turning = sharpened(system, half[:-1], turned[:-1] + tangent[:-1], half[-1])
             if abs(turning.lam - lam) > 0.5 * step + 1e-6:

@@ -16,22 +16,25 @@ from scipy.integrate import solve_ivp
 from tests.campaign.model import EXPONENTS, Q, XI, Model, P, U, W
 
 Array = npt.NDArray[np.float64]
+SIDE = sympy.Symbol("_side", real=True)
 AXIS_START = 1e-4  # the series at the axis is carried to the third power: 1e-16 is left
 
 
 class Shooting:
     """A model made ready for integration on [0, 1]."""
 
-    def __init__(self, model: Model) -> None:
+    def __init__(self, model: Model, kink: float | None = None) -> None:
         residual, left, right = model.scaled
-        self.model = model
+        self.model, self.kink = model, kink
+        # |u - c| is followed as (u - c) times the side, which changes where u passes c.
+        residual = residual.replace(sympy.Abs, lambda inside: SIDE * inside) if kink is not None else residual
         s = EXPONENTS[model.geometry]
         self.axis = s > 0 and model.left == 0
         radial = s * P / (XI + model.left / (model.right - model.left)) if s else sympy.Integer(0)
         regular = sympy.simplify(residual - W - radial) if s else residual - W
         field = -(regular + radial)
         arguments = [XI, U, P, *model.symbols]
-        self.field = sympy.lambdify(arguments, [field, sympy.diff(field, U), sympy.diff(field, P)], modules=["math", "scipy"], cse=True)
+        self.field = sympy.lambdify([*arguments, SIDE], [field, sympy.diff(field, U), sympy.diff(field, P)], modules=["math", "scipy"], cse=True)
         self.right = sympy.lambdify(arguments, [right, sympy.diff(right, U), sympy.diff(right, P)], modules=["math", "scipy"])
         u, p, x = self._start(regular, left, s)
         start = [u, p, sympy.diff(u, Q), sympy.diff(p, Q)]
@@ -64,18 +67,26 @@ class Shooting:
 
         def derivative(x: float, y: Array) -> list[float]:
             u, p, du, dp = y
-            second, by_u, by_p = field(x, u, p, *numbers)
+            second, by_u, by_p = field(x, u, p, *numbers, side)
             return [p, second, dp, by_u * du + by_p * dp]
 
-        y = np.array(self.start(q, *numbers), dtype=float)
+        def passes(x: float, y: Array) -> float:
+            return float(y[0] - kink) if kink is not None else 1.0
+
+        passes.terminal = True  # type: ignore[attr-defined]
+        y, kink = np.array(self.start(q, *numbers), dtype=float), self.kink
+        side = 1.0 if kink is None or y[0] > kink else -1.0
         places = [self.first_place, *self.model.breaks, 1.0]
         for begin, end in zip(places, places[1:], strict=False):
             # One float inside each piece: no stage may stand on a kink, where sign() is 0.
-            inside = (np.nextafter(begin, 1.0) if begin else begin, np.nextafter(end, 0.0))
-            result = solve_ivp(derivative, inside, y, method="DOP853", rtol=2.3e-14, atol=1e-16)
-            if result.status != 0:
-                raise ArithmeticError("the integration stopped before the end")
-            y = result.y[:, -1]
+            begin, end = (np.nextafter(begin, 1.0) if begin else begin), np.nextafter(end, 0.0)
+            while begin < end:
+                passes.direction = -side  # type: ignore[attr-defined]
+                result = solve_ivp(derivative, (begin, end), y, method="DOP853", rtol=2.3e-14, atol=1e-16, events=passes)
+                if result.status < 0:
+                    raise ArithmeticError("the integration stopped before the end")
+                y, begin = result.y[:, -1], result.t[-1]
+                side = -side if result.status == 1 else side
         row, by_u, by_p = self.right(1.0, y[0], y[1], *numbers)
         return np.array([row, by_u * y[2] + by_p * y[3]])
 

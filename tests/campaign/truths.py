@@ -83,8 +83,10 @@ def by_shooting(model: Model, turning: Turning) -> list[float]:
 def statement_of(draft: Draft, name: str) -> Statement:
     """The problem with its truth; NotAgreed or ArithmeticError where there is none to stand behind."""
     model = draft.model
+    if draft.energy is not None and draft.energy.kinks:
+        return kinked_statement(draft, name)
     followed = follow(model, float(draft.trace["start"]), str(draft.trace["direction"]), draft.wanted, beyond=60, n=54 if not draft.collocation else 36)
-    turnings = [turning for _, turning in followed.turnings[: draft.wanted]]
+    turnings = [turning for _, turning in followed.turnings]
     if draft.closed is not None:
         with mp.workdps(DIGITS):
             values = draft.closed()
@@ -106,12 +108,33 @@ def statement_of(draft: Draft, name: str) -> Statement:
             other, second_values = "shooting", [mpf(value) for turning in turnings for value in by_shooting(model, turning)]
     else:
         other, second_values = "shooting", [mpf(value) for turning in turnings for value in by_shooting(model, turning)]
-    agreement = max(float(abs(a.value - b) / abs(a.value)) for a, b in zip(first, second_values, strict=True))
-    if not agreement < AGREED:
-        raise NotAgreed(f"{[mp.nstr(one.value, 16) for one in first]} by {origin}, {[mp.nstr(one, 16) for one in second_values]} by {other}")
-    points = tuple(TrueTurningPoint(mp.nstr(one.value, 22), float(one.uncertainty), text(one.largest, 17)) for one in first)
+    agreement = agreed([one.value for one in first], second_values, origin, other)
     states = states_beside(followed, draft) if draft.collocation else None
-    return Statement(name, draft.kind, draft.problem, {**draft.trace, **draft.extra}, points, (origin, other), agreement, states)
+    return stated(draft, name, first, (origin, other), agreement, states)
+
+
+def kinked_statement(draft: Draft, name: str) -> Statement:
+    """A source with a kink in u: the energy integral split there, and shooting that stops and starts again where u passes it."""
+    assert draft.energy is not None
+    truth = by_energy(draft.energy, {key: value for key, value in draft.model.parameters.items() if key != draft.model.along})
+    near = float(truth.value) / draft.model.along_unit
+    value = Shooting(draft.model, draft.energy.kinks[0]).turning_point(float(truth.largest) * 1.0003, near * 0.9997) * draft.model.along_unit
+    origins = ("quadrature of the energy integral", "shooting")
+    return stated(draft, name, [truth], origins, agreed([truth.value], [mpf(value)], *origins), None)
+
+
+def agreed(first: list[Any], second: list[Any], origin: str, other: str) -> float:
+    """The largest relative difference of the two origins; NotAgreed where it is too large."""
+    agreement = max(float(abs(a - b) / abs(a)) for a, b in zip(first, second, strict=True))
+    if not agreement < AGREED:
+        raise NotAgreed(f"{[mp.nstr(one, 16) for one in first]} by {origin}, {[mp.nstr(one, 16) for one in second]} by {other}")
+    return agreement
+
+
+def stated(draft: Draft, name: str, truths: list[Truth], origins: tuple[str, str], agreement: float, states: TrueStates | None) -> Statement:
+    """The record of a draft and its truth."""
+    points = tuple(TrueTurningPoint(mp.nstr(one.value, 22), float(one.uncertainty), text(one.largest, 17)) for one in truths)
+    return Statement(name, draft.kind, draft.problem, draft.trace, points, origins, agreement, states)
 
 
 def text(value: Any, digits: int) -> str:
@@ -127,17 +150,23 @@ def states_beside(followed: Followed, draft: Draft) -> TrueStates | None:
     # A share that depends on the problem alone, between 0.35 and 0.9 of the way to the turning point.
     share = 0.35 + 0.55 * (abs(first) * 1e3 % 1.0)
     at = float(f"{(start + share * (first - start)) * model.along_unit:.6g}")
-    lists = []
-    for n in (54, 80):
-        system = Collocated(model, n)
-        exact = panels(n, system.breaks)
-        values = []
-        for y, lam in crossings(followed, at / model.along_unit)[:2]:
-            found = system.newton(moved(y, followed.system, system), lam, np.eye(system.size + 1)[-1], lam, steps=30)
-            if found is None:
-                return None
-            values.append(model.base + model.unit * float(largest_value(exact, [float(one) for one in found[0]])[1]))
-        lists.append(values)
-    if not lists[0] or any(abs(a - b) > 1e-11 * abs(b) for a, b in zip(*lists, strict=True)):
-        return None
-    return TrueStates(at, tuple(f"{one:.15g}" for one in lists[1]), 1e-11 * max(abs(one) for one in lists[1]))
+    values: list[float] = []
+    uncertainty = 0.0
+    for y, lam in crossings(followed, at / model.along_unit)[:2]:
+        pair = [largest_of(followed, y, lam, n) for n in (54, 80)]
+        gap = abs(pair[1] - pair[0])
+        if not gap < 1e-11 * abs(pair[1]):
+            break
+        values.append(pair[1])
+        uncertainty = max(uncertainty, 3 * gap, 1e-13 * abs(pair[1]))
+    return TrueStates(at, tuple(f"{one:.15g}" for one in values), uncertainty) if values else None
+
+
+def largest_of(followed: Followed, y: Any, lam: float, n: int) -> float:
+    """The largest u of a state near y at a fixed parameter on n points; nan where Newton does not settle there."""
+    model = followed.system.model
+    system = Collocated(model, n)
+    found = system.newton(moved(y, followed.system, system), lam, np.eye(system.size + 1)[-1], lam, steps=30)
+    if found is None:
+        return float("nan")
+    return model.base + model.unit * float(largest_value(panels(n, system.breaks), [float(one) for one in found[0]])[1])
