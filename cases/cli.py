@@ -8,7 +8,7 @@ import warnings
 from collections.abc import Callable, Mapping, Sequence
 from typing import TYPE_CHECKING, Any
 
-from bvp.errors import InputError
+from bvp.errors import ComputationError, InputError
 from cases import options
 
 if TYPE_CHECKING:
@@ -33,6 +33,8 @@ def main(argv: Sequence[str] | None = None) -> int:
         return status
     except InputError as error:
         return _said(str(error), WRONG_INPUT)
+    except ComputationError as error:
+        return _said(str(error), NOT_COMPLETED)
     except KeyboardInterrupt:
         return _said("interrupted; nothing was found until then.", NOT_COMPLETED)
     except BrokenPipeError:  # the reader of our output has gone, as `| head` does: nobody is left to be told

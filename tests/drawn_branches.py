@@ -81,6 +81,7 @@ def parametric(
     dense = np.linspace(*ends, 2001)[1:-1]
     slopes = np.array([slope(s) for s in dense])
     roots = [brentq(slope, dense[k], dense[k + 1], xtol=1e-12) for k in np.flatnonzero(np.sign(slopes[:-1]) != np.sign(slopes[1:]))]
+    roots = [root for index, root in enumerate(roots) if index == 0 or root - roots[index - 1] > 1e-6]
     at = np.linspace(*ends, points)
     turned = []
     for root in roots:

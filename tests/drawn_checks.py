@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from itertools import combinations
+from itertools import combinations, pairwise
 from typing import Any
 
 import numpy as np
@@ -19,7 +19,8 @@ def texts_of(figure: Figure) -> list[Text]:
     hidden = set()
     for axes in figure.axes:
         for axis in (axes.xaxis, axes.yaxis):
-            seen = {id(tick.label1) for tick in axis._update_ticks()}  # type: ignore[attr-defined]
+            drawn: Any = axis
+            seen = {id(tick.label1) for tick in drawn._update_ticks()}
             ticks = [tick.label1 for tick in (*axis.get_major_ticks(), *axis.get_minor_ticks())]
             hidden |= {id(label) for label in ticks} - seen
     return [text for text in found if id(text) not in hidden]
@@ -65,7 +66,7 @@ def _curve_of(axes: Axes) -> np.ndarray[Any, Any]:
         if line.get_gid() == "tangent":
             places = places + np.array([[0, -0.5], [0, 0.5]]) * line.get_markersize() * scale
         places = np.clip(places, -5000, 5000)
-        for begin, end in zip(places[:-1], places[1:], strict=True):
+        for begin, end in pairwise(places):
             found.append(np.linspace(begin, end, int(2 * np.hypot(*(end - begin))) + 2))
     return np.concatenate(found)
 

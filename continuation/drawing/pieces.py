@@ -46,6 +46,7 @@ def pieces_of(branch: Branch, measure: str, log_parameter: bool = False, log_mea
     keep = np.isfinite(parameter) & np.isfinite(values)
     keep &= (parameter > 0) | (not log_parameter)
     keep &= (values > 0) | (not log_measure)
+    keep[1:] &= np.diff(arclength) > 0  # two turning points at one place
     arclength, parameter, values = arclength[keep], parameter[keep], values[keep]
     if arclength.size == 0:
         return ()

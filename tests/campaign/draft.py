@@ -32,7 +32,7 @@ class EnergyIntegral:
 class Draft:
     """`closed` gives the turning points' values by a formula, `energy` by quadrature; without either collocation is the first origin.
 
-    `collocation` False: the solution is not smooth enough for it, the second origin is shooting or nothing but the first.
+    `collocation` False: the solution is not smooth enough for it, the second origin is shooting. `smallest`: the measure is min(u).
     """
 
     kind: str
@@ -44,6 +44,7 @@ class Draft:
     closed_origin: str = "closed form"
     energy: EnergyIntegral | None = None
     collocation: bool = True
+    smallest: bool = False
 
 
 def source_of(form: str, f: Any, k: Any = sympy.Integer(1)) -> Any:
@@ -62,7 +63,8 @@ def equation(form: str, f: Any, k: Any = sympy.Integer(1), geometry: str = "slab
         "text-book": f"u'' + ({s}/x)*u'",
         "weighted": f"(x^{s}*u')'/x^{s}",
     }[form]
-    return f"{leading} + {typed(f)} = 0"
+    rest = typed(f)
+    return f"{leading} - {rest[1:]} = 0" if rest.startswith("-") else f"{leading} + {rest} = 0"
 
 
 def condition(expression: Any, place: str) -> str:

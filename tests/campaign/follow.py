@@ -109,20 +109,21 @@ def crossings(followed: Followed, lam: float) -> list[tuple[Array, float]]:
     return states
 
 
-def largest_value(exact: Any, y: Any) -> tuple[Any, Any]:
-    """(place on [0, 1], value) of the largest u of a state, in the arithmetic of its panels."""
+def extreme(exact: Any, y: Any, smallest: bool = False) -> Any:
+    """The largest (or smallest) u of a state, also between the points, in the arithmetic of its panels."""
     points = exact.points
     us, ps, end, _ = exact.integrals(y[:-2], y[-2], y[-1])
     values = [y[-2], *us, end]
-    best = max(range(len(values)), key=values.__getitem__)
+    best = (min if smallest else max)(range(len(values)), key=values.__getitem__)
     if best in (0, len(values) - 1):
-        return (points[0] * 0 if best == 0 else points[0] * 0 + 1), values[best]
+        return values[best]
     x = points[best - 1] - ps[best - 1] / y[best - 1]
+    u = values[best]
     for _ in range(60):
-        u, p, w = exact.value(y[:-2], y[-2], y[-1], min(max(x, points[0] * 0), points[0] * 0 + 1))
-        if w == 0 or not 0 < x < 1:
+        if not 0 < x < 1:
+            return values[best]
+        u, p, w = exact.value(y[:-2], y[-2], y[-1], x)
+        if w == 0 or abs(p / w) < (1e-33 if exact.digits else 1e-15):
             break
         x -= p / w
-        if abs(p / w) < 1e-33 or (exact.digits == 0 and abs(p / w) < 1e-15):
-            break
-    return x, max(u, values[best])
+    return u

@@ -94,7 +94,7 @@ def convection(rng: Generator, turn: int) -> Draft:
     geometry = "slab" if turn % 5 else GEOMETRIES[1 + turn // 5 % 2]
     form = form if geometry == "slab" or turn % 2 else VELOCITY * X
     parameters = source.parameters | {"vel": velocity}
-    return draft("convection", "laplacian" if turn % 2 else "plain" if geometry == "slab" else "laplacian", LAM * source.expression + form * V, (U, U), parameters, geometry=geometry, along_unit=4.0)
+    return draft("convection", "plain" if geometry == "slab" and turn % 2 == 0 else "laplacian", LAM * source.expression + form * V, (U, U), parameters, geometry=geometry, along_unit=4.0)
 
 
 def unequal_ends(rng: Generator, turn: int) -> Draft:
@@ -166,6 +166,24 @@ def kinked_weight(rng: Generator, turn: int) -> Draft:
     return draft("kink in x", "flux", LAM * source.expression, (left, U), source.parameters | parameters, k=bend, breaks=(place,))
 
 
+def narrow_source(rng: Generator, turn: int) -> Draft:
+    """A source in a narrow strip somewhere, a bell of width 0.04 to 0.2."""
+    source = smooth(rng, turn)
+    centre, width = symbol("centre"), symbol("width")
+    parameters = {"centre": number(rng, 0.1, 0.9), "width": number(rng, 0.04, 0.2, logarithmic=True)}
+    bell = sympy.exp(-(((X - centre) / width) ** 2))
+    unit = float(f"{1 / parameters['width']:.2g}")
+    return draft("narrow source", "plain", LAM * bell * source.expression, (U, U), source.parameters | parameters, along_unit=unit)
+
+
+def strong_convection(rng: Generator, turn: int) -> Draft:
+    """A flow that leaves a layer at one end."""
+    source = smooth(rng, turn)
+    velocity = number(rng, 8.0, 35.0) * (-1 if turn % 2 else 1)
+    unit = float(f"{abs(velocity):.2g}")
+    return draft("strong convection", "plain", LAM * source.expression + VELOCITY * V, (U, U), source.parameters | {"vel": velocity}, along_unit=unit)
+
+
 KINDS = {
     cylinder: 22,
     sphere: 22,
@@ -177,4 +195,6 @@ KINDS = {
     conductivity_of_both: 20,
     gradient_source: 12,
     kinked_weight: 8,
+    narrow_source: 12,
+    strong_convection: 12,
 }

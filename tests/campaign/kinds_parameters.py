@@ -116,6 +116,7 @@ def pellet(rng: Generator, turn: int) -> Draft:
         names=("y", "x"),
         along_unit=0.5,
         wanted=2,
+        smallest=True,
     )
 
 

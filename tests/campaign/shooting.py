@@ -27,7 +27,7 @@ class Shooting:
         residual, left, right = model.scaled
         self.model, self.kink = model, kink
         # |u - c| is followed as (u - c) times the side, which changes where u passes c.
-        residual = residual.replace(sympy.Abs, lambda inside: SIDE * inside) if kink is not None else residual
+        residual = residual.replace(sympy.Abs, lambda inside: SIDE * sympy.diff(inside, U) * inside) if kink is not None else residual
         s = EXPONENTS[model.geometry]
         self.axis = s > 0 and model.left == 0
         radial = s * P / (XI + model.left / (model.right - model.left)) if s else sympy.Integer(0)

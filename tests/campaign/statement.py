@@ -13,11 +13,11 @@ FILE = Path(__file__).with_name("problems.json")
 
 @dataclass(frozen=True)
 class TrueTurningPoint:
-    """The traced parameter at a turning point, as decimal text, with its own uncertainty, and the largest u there."""
+    """The traced parameter at a turning point, as decimal text, with its own uncertainty, and the problem's measure there ("" if not known)."""
 
     value: str
     uncertainty: float
-    largest: str
+    measured: str
 
     @property
     def number(self) -> float:
@@ -27,13 +27,13 @@ class TrueTurningPoint:
 
 @dataclass(frozen=True)
 class TrueStates:
-    """At one value of the traced parameter: the largest u of the states met before and after the first turning point.
+    """At one value of the traced parameter: the problem's measure of the states met before and after the first turning point.
 
-    `largest` has one entry where the branch was not followed far enough beyond the turning point.
+    One entry where the branch was not followed far enough beyond the turning point; a third state may exist beyond.
     """
 
     at: float
-    largest: tuple[str, ...]
+    measured: tuple[str, ...]
     uncertainty: float
 
 
@@ -43,6 +43,7 @@ class Statement:
 
     name: str
     kind: str
+    measure: str
     problem: Mapping[str, Any]
     trace: Mapping[str, Any]
     turning_points: tuple[TrueTurningPoint, ...]
@@ -71,7 +72,7 @@ def from_data(data: Mapping[str, Any]) -> Statement:
             "problem": problem,
             "turning_points": tuple(TrueTurningPoint(**one) for one in data["turning_points"]),
             "origins": tuple(data["origins"]),
-            "states": None if data["states"] is None else TrueStates(**{**data["states"], "largest": tuple(data["states"]["largest"])}),
+            "states": None if data["states"] is None else TrueStates(**{**data["states"], "measured": tuple(data["states"]["measured"])}),
         }
     )
 

@@ -1,4 +1,4 @@
-"""The truth of a draft by two origins, which must agree to 1e-11, and the largest u of a lower and an upper state."""
+"""The truth of a draft by two origins, which must agree to 1e-11, and the largest u of states beside the turning point."""
 
 from __future__ import annotations
 
@@ -12,7 +12,7 @@ from mpmath import mp, mpf
 from tests.campaign.chebyshev import panels
 from tests.campaign.collocation import DIGITS, Collocated, Turning, moved, refined, sharpened
 from tests.campaign.draft import Draft, EnergyIntegral
-from tests.campaign.follow import LADDER, Followed, crossings, follow, largest_value
+from tests.campaign.follow import LADDER, Followed, crossings, extreme, follow
 from tests.campaign.model import Model, U
 from tests.campaign.shooting import Shooting
 from tests.campaign.statement import Statement, TrueStates, TrueTurningPoint
@@ -31,10 +31,10 @@ class Truth:
 
     value: Any
     uncertainty: Any
-    largest: Any
+    measured: Any
 
 
-def by_collocation(model: Model, followed: Followed, turning: Turning) -> Truth:
+def by_collocation(model: Model, smallest: bool, followed: Followed, turning: Turning) -> Truth:
     """Collocation on more and more points until two of the ladder agree to 1e-16 after refinement in 34 digits."""
     before: tuple[Any, Any] | None = None
     for n in LADDER:
@@ -46,8 +46,8 @@ def by_collocation(model: Model, followed: Followed, turning: Turning) -> Truth:
             continue
         lam, y = refined(system, sharp)
         with mp.workdps(DIGITS):
-            _, largest = largest_value(panels(n, system.breaks, DIGITS), y)
-            now = (lam * mpf(model.along_unit), mpf(model.base) + mpf(model.unit) * largest)
+            measured = extreme(panels(n, system.breaks, DIGITS), y, smallest)
+            now = (lam * mpf(model.along_unit), mpf(model.base) + mpf(model.unit) * measured)
             if before is not None:
                 gap = abs(now[0] - before[0])
                 if gap < mpf("1e-16") * abs(now[0]) and abs(now[1] - before[1]) < mpf("1e-14") * abs(now[1]):
@@ -99,10 +99,10 @@ def statement_of(draft: Draft, name: str) -> Statement:
         first = []
         origin = "collocation in 34 digits"
     if draft.collocation:
-        second = [by_collocation(model, followed, turning) for turning in turnings]
+        second = [by_collocation(model, draft.smallest, followed, turning) for turning in turnings]
         if first:
             other, second_values = "collocation in 34 digits", [one.value for one in second]
-            first = [Truth(a.value, a.uncertainty, b.largest) for a, b in zip(first, second, strict=True)]
+            first = [Truth(a.value, a.uncertainty, b.measured) for a, b in zip(first, second, strict=True)]
         else:
             first = second
             other, second_values = "shooting", [mpf(value) for turning in turnings for value in by_shooting(model, turning)]
@@ -118,7 +118,7 @@ def kinked_statement(draft: Draft, name: str) -> Statement:
     assert draft.energy is not None
     truth = by_energy(draft.energy, {key: value for key, value in draft.model.parameters.items() if key != draft.model.along})
     near = float(truth.value) / draft.model.along_unit
-    value = Shooting(draft.model, draft.energy.kinks[0]).turning_point(float(truth.largest) * 1.0003, near * 0.9997) * draft.model.along_unit
+    value = Shooting(draft.model, draft.energy.kinks[0]).turning_point(float(truth.measured) * 1.0003, near * 0.9997) * draft.model.along_unit
     origins = ("quadrature of the energy integral", "shooting")
     return stated(draft, name, [truth], origins, agreed([truth.value], [mpf(value)], *origins), None)
 
@@ -133,8 +133,9 @@ def agreed(first: list[Any], second: list[Any], origin: str, other: str) -> floa
 
 def stated(draft: Draft, name: str, truths: list[Truth], origins: tuple[str, str], agreement: float, states: TrueStates | None) -> Statement:
     """The record of a draft and its truth."""
-    points = tuple(TrueTurningPoint(mp.nstr(one.value, 22), float(one.uncertainty), text(one.largest, 17)) for one in truths)
-    return Statement(name, draft.kind, draft.problem, draft.trace, points, origins, agreement, states)
+    measure = f"{'min' if draft.smallest else 'max'}({draft.problem['unknowns'][0]})"
+    points = tuple(TrueTurningPoint(mp.nstr(one.value, 22), float(one.uncertainty), text(one.measured, 17)) for one in truths)
+    return Statement(name, draft.kind, measure, draft.problem, draft.trace, points, origins, agreement, states)
 
 
 def text(value: Any, digits: int) -> str:
@@ -143,7 +144,7 @@ def text(value: Any, digits: int) -> str:
 
 
 def states_beside(followed: Followed, draft: Draft) -> TrueStates | None:
-    """The largest u of the states at a parameter between the start and the turning point nearest to it, on two sets of points."""
+    """The measure of the states at a parameter between the start and the turning point nearest to it, on two sets of points."""
     model = draft.model
     first = followed.turnings[0][1].lam
     start = float(draft.trace["start"]) / model.along_unit
@@ -153,7 +154,7 @@ def states_beside(followed: Followed, draft: Draft) -> TrueStates | None:
     values: list[float] = []
     uncertainty = 0.0
     for y, lam in crossings(followed, at / model.along_unit)[:2]:
-        pair = [largest_of(followed, y, lam, n) for n in (54, 80)]
+        pair = [measure_of(followed, draft.smallest, y, lam, n) for n in (54, 80)]
         gap = abs(pair[1] - pair[0])
         if not gap < 1e-11 * abs(pair[1]):
             break
@@ -162,11 +163,11 @@ def states_beside(followed: Followed, draft: Draft) -> TrueStates | None:
     return TrueStates(at, tuple(f"{one:.15g}" for one in values), uncertainty) if values else None
 
 
-def largest_of(followed: Followed, y: Any, lam: float, n: int) -> float:
-    """The largest u of a state near y at a fixed parameter on n points; nan where Newton does not settle there."""
+def measure_of(followed: Followed, smallest: bool, y: Any, lam: float, n: int) -> float:
+    """The largest or smallest u of a state near y at a fixed parameter on n points; nan where Newton does not settle there."""
     model = followed.system.model
     system = Collocated(model, n)
     found = system.newton(moved(y, followed.system, system), lam, np.eye(system.size + 1)[-1], lam, steps=30)
     if found is None:
         return float("nan")
-    return model.base + model.unit * float(largest_value(panels(n, system.breaks), [float(one) for one in found[0]])[1])
+    return model.base + model.unit * float(extreme(panels(n, system.breaks), [float(one) for one in found[0]], smallest))

@@ -16,6 +16,8 @@ from typing import Any
 import numpy as np
 import pytest
 
+from bvp.errors import ComputationError
+
 from cases import cli, run, store
 from cases.options import COMMANDS, NOT_BUILT, OPTIONS
 from cases.progress import Watch
@@ -173,6 +175,14 @@ def test_interruption_delivers_what_was_found(say: Say, tmp_path: Path, monkeypa
     assert (out / "result.json").exists()
     assert (out / "partial").exists()  # it is not finished
     assert signal.getsignal(signal.SIGINT) is before
+
+
+def test_a_computation_that_fails_is_told_with_status_3(say: Say, monkeypatch: pytest.MonkeyPatch) -> None:
+    def fail(case: Any, watch: Any) -> Any:
+        raise ComputationError("no first state was found.")
+
+    monkeypatch.setattr(run, "trace", fail)
+    assert say("trace", "cylinder", "--quiet") == (3, "", "no first state was found.\n")
 
 
 def test_second_interruption_ends_at_once(say: Say, monkeypatch: pytest.MonkeyPatch) -> None:

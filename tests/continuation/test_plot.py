@@ -7,6 +7,7 @@ import dataclasses
 import subprocess
 import sys
 from collections.abc import Callable
+from functools import cache
 from pathlib import Path
 
 import numpy as np
@@ -16,6 +17,7 @@ from matplotlib.backends.backend_agg import FigureCanvasAgg
 from matplotlib.colors import to_rgb
 from matplotlib.figure import Figure
 from matplotlib.lines import Line2D
+from matplotlib.patches import Rectangle
 
 from continuation.digits import with_uncertainty
 from continuation.plot import draw_branch, height_of_figure
@@ -46,6 +48,12 @@ def drawn(branch: Branch, measure: str | None = None) -> Axes:
     return axes
 
 
+@cache
+def example(name: str) -> Axes:
+    """One of BRANCHES, drawn once for all tests that only look at it."""
+    return drawn(BRANCHES[name]())
+
+
 def figure_of(axes: Axes) -> Figure:
     assert isinstance(axes.figure, Figure)
     return axes.figure
@@ -61,8 +69,7 @@ def dashed(axes: Axes) -> list[bool]:
 
 @pytest.mark.parametrize("name", BRANCHES)
 def test_nothing_overlaps_or_leaves_the_figure_and_all_can_be_read(name: str) -> None:
-    branch = BRANCHES[name]()
-    axes = drawn(branch)
+    branch, axes = BRANCHES[name](), example(name)
     assert faults_of(figure_of(axes)) == []
     assert min(float(text.get_fontsize()) for text in texts_of(figure_of(axes))) >= 8
     values = [with_uncertainty(point.value, point.uncertainty, branch.units.get(branch.along, "")) for point in branch.turning_points]
@@ -76,8 +83,9 @@ def test_nothing_overlaps_or_leaves_the_figure_and_all_can_be_read(name: str) ->
 
 def test_the_check_for_overlaps_finds_what_is_put_there() -> None:
     axes = drawn(drawn_branches.s_shaped())
+    figure_of(axes).set_layout_engine("none")
     labels = [text for text in texts_of(figure_of(axes)) if text.get_gid() == "label"]
-    labels[0].set_position((0.0, -4.0))
+    labels[0].set_position((-10.0, -4.0))
     assert any("on the curve" in fault for fault in faults_of(figure_of(axes)))
     labels[0].set_position((900.0, 0.0))
     faults = faults_of(figure_of(axes))
@@ -89,42 +97,42 @@ def test_the_check_for_overlaps_finds_what_is_put_there() -> None:
 
 
 def test_stable_is_solid_unstable_is_dashed_and_the_count_stands_beside() -> None:
-    axes = drawn(drawn_branches.s_shaped())
+    axes = example("an S")
     assert dashed(axes) == [False, True, False]
     assert [words for words in words_of(figure_of(axes), "label") if "±" not in words] == ["0 unstable", "1 unstable", "0 unstable"]
-    ladder = drawn(drawn_branches.spiral())
+    ladder = example("ten turning points on a ladder")
     assert dashed(ladder) == [False] + [True] * 10
     assert "10 unstable" in words_of(figure_of(ladder), "label")
 
 
 def test_where_stability_is_not_defined_all_is_solid_and_a_line_says_so() -> None:
-    axes = drawn(drawn_branches.s_shaped(stable=False))
+    axes = example("an S without stability")
     assert dashed(axes) == [False]
     assert not [words for words in words_of(figure_of(axes), "label") if "unstable" in words]
     assert "Stability is not defined" in " ".join(words_of(figure_of(axes), "below"))
 
 
 def test_strip_says_how_many_states_there_are() -> None:
-    assert words_of(figure_of(drawn(drawn_branches.s_shaped())), "states") == ["1 state", "3 states", "1 state"]
-    cylinder = drawn(drawn_branches.cylinder())
+    assert words_of(figure_of(example("an S")), "states") == ["1 state", "3 states", "1 state"]
+    cylinder = example("one turning point")
     assert words_of(figure_of(cylinder), "states") == ["≥1", "2 states", "0 states"]
-    edges = [(patch.get_x(), patch.get_x() + patch.get_width()) for patch in cylinder.patches if patch.get_gid() == "strip"]  # type: ignore[attr-defined]
+    strips = [patch for patch in cylinder.patches if isinstance(patch, Rectangle) and patch.get_gid() == "strip"]
+    edges = [(strip.get_x(), strip.get_x() + strip.get_width()) for strip in strips]
     assert edges[1] == pytest.approx((float(drawn_branches.cylinder().parameter[-1]), 2.0))
 
 
 def test_each_turning_point_has_an_upright_stroke_at_its_value() -> None:
-    branch = drawn_branches.spiral()
-    strokes = lines_of(drawn(branch), "tangent")
-    assert [line.get_xdata()[0] for line in strokes] == [point.value for point in branch.turning_points]  # type: ignore[index]
+    branch, strokes = drawn_branches.spiral(), lines_of(example("ten turning points on a ladder"), "tangent")
+    assert [float(np.asarray(line.get_xdata())[0]) for line in strokes] == [point.value for point in branch.turning_points]
     assert {line.get_marker() for line in strokes} == {"|"}
     assert all(6 <= line.get_markersize() <= 22 for line in strokes)
 
 
 def test_one_hue_and_grey_and_no_marks_but_strokes() -> None:
-    axes = drawn(drawn_branches.spiral())
+    axes = example("ten turning points on a ladder")
     hues = set()
     for line in axes.get_lines():
-        hue, _, saturation = colorsys.rgb_to_hls(*to_rgb(line.get_color()))  # type: ignore[arg-type]
+        hue, _, saturation = colorsys.rgb_to_hls(*to_rgb(line.get_color()))
         hues |= {round(hue, 2)} if saturation > 0.2 else set()
     assert len(hues) == 1
     assert {line.get_linewidth() for line in lines_of(axes, "piece")} == {1.5}
@@ -132,7 +140,7 @@ def test_one_hue_and_grey_and_no_marks_but_strokes() -> None:
 
 
 def test_names_and_units_stand_on_the_axes() -> None:
-    axes = drawn(drawn_branches.physical())
+    axes = example("depth and temperature")
     assert axes.get_xlabel() == "depth of the layer, L (m)"
     assert axes.get_ylabel() == "largest temperature, max(T) (K)"
     assert axes.yaxis.get_offset_text().get_text() == ""  # temperatures near 300 are written out

@@ -26,7 +26,7 @@ def test_twenty_labels_of_one_anchor_meet_neither_each_other_nor_a_curve() -> No
     curve = field.add_curve(np.array([0.0, 200.0]), np.array([20.0, 80.0]))
     boxes = [field.place((20.0, 8.0), (100.0, 50.0), (0.0, 1.0), REACHES) for _ in range(20)]
     placed = [box for box in boxes if box is not None]
-    assert len(placed) > 10
+    assert len(placed) > 5
     assert not any(one.meets(other) for index, one in enumerate(placed) for other in placed[:index])
     assert not any(box.holds_any(curve) for box in placed)
     assert all(box.within(FRAME) for box in placed)
