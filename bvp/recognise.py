@@ -8,7 +8,7 @@ from __future__ import annotations
 import random
 from collections.abc import Callable, Sequence
 
-from bvp.formula import derivative, evaluate, float_functions
+from bvp.formula import derivative, evaluate, folded
 from bvp.formula.tree import Binary, Call, Name, Negative, Node, Number, Prime, transform, walk
 
 Functions = dict[str, Callable[..., float]]
@@ -47,7 +47,7 @@ def _plain_form(tree: Node, unknown: str, coordinate: str, functions: Functions)
     if exponent not in (1, 2):
         return tree, 0
     replaced = {first: Number(0.0), second: Call("laplacian", (Name(unknown),))}
-    return transform(tree, replaced.get), exponent
+    return folded(transform(tree, replaced.get)), exponent
 
 
 def _factors(tree: Node) -> tuple[list[Node], list[Node]]:

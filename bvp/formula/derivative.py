@@ -61,6 +61,20 @@ def raise_to(base: Node, exponent: float) -> Node:
     return base if exponent == 1.0 else Binary("^", base, Number(exponent))
 
 
+def folded(tree: Node) -> Node:
+    """The tree with sums and products of literal zeros and ones carried out, nothing else changed."""
+    if isinstance(tree, Negative):
+        return negative(folded(tree.operand))
+    if isinstance(tree, Binary):
+        left, right = folded(tree.left), folded(tree.right)
+        if tree.operator == "^":
+            return raise_to(left, right.value) if isinstance(right, Number) else Binary("^", left, right)
+        return {"+": add, "-": subtract, "*": multiply, "/": divide}[tree.operator](left, right)
+    if tree.parts:
+        return tree.rebuilt(tuple(folded(part) for part in tree.parts))
+    return tree
+
+
 def derivative(tree: Node, leaf: Node) -> Node:
     """The exact derivative of a tree by one of its leaves (Name, Indexed, Prime or At); other leaves are held fixed."""
     done: dict[Node, Node] = {}

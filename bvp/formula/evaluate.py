@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Mapping, Sequence
 from functools import cache
 from typing import Any
 
@@ -17,6 +17,11 @@ def evaluate(tree: Node, value: Callable[[Any], Any], functions: Functions) -> A
 
     Raises what the arithmetic raises; the tables here give nan or inf instead wherever floats can.
     """
+    return evaluate_all([tree], value, functions)[0]
+
+
+def evaluate_all(trees: Sequence[Node], value: Callable[[Any], Any], functions: Functions) -> list[Any]:
+    """The values of several trees, subtrees that they share worked out once."""
     done: dict[Node, Any] = {}
 
     def of(node: Node) -> Any:
@@ -36,7 +41,7 @@ def evaluate(tree: Node, value: Callable[[Any], Any], functions: Functions) -> A
         done[node] = result
         return result
 
-    return of(tree)
+    return [of(tree) for tree in trees]
 
 
 def _operate(operator: str, left: Any, right: Any) -> Any:

@@ -259,7 +259,7 @@ class _Parser:
         if half and not is_coordinate:
             raise self.error(word, f"{word.text} has no value half way between nodes.", f"Only the coordinate has: {vocabulary.coordinate}[k+1/2]. Write ({word.text}[k] + {word.text}[k+1])/2.")
         if offset not in (OFFSETS + HALVES):
-            raise self.error(word, f"the node k{offset:+} is out of reach.".replace("+0", ""), "A scheme has the nodes k-1, k and k+1.")
+            raise self.error(word, f"the node k{'+' * (offset > 0)}{offset} is out of reach.", "A scheme has the nodes k-1, k and k+1.")
         return Indexed(word.text, offset, word.column)
 
     def offset(self) -> Fraction:

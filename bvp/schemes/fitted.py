@@ -13,7 +13,7 @@ from bvp.errors import SchemeError
 from bvp.formula import derivative, write
 from bvp.formula.tree import Binary, Call, Name, Negative, Node, Number, Prime, transform, walk
 from bvp.geometry import power
-from bvp.problem import Equation
+from bvp.problem import Equation, Problem
 from bvp.schemes.difference import minus, node_value, over
 from bvp.schemes.scheme import STEP, Scheme, Shape, at_node
 
@@ -63,7 +63,7 @@ def _over(tree: Node, leading: Node) -> Node:
 class Fitted(Scheme):
     """The fitted scheme; uniform grids only."""
 
-    def needs_uniform_grid(self) -> bool:
+    def needs_uniform_grid(self, problem: Problem) -> bool:
         """Its weights are exact for equal steps."""
         return True
 

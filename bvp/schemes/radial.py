@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from fractions import Fraction
 
 from bvp.formula.tree import Node
 from bvp.problem import Equation, Problem
@@ -56,4 +55,3 @@ SHELL_BALANCE = RadialScheme("shell-balance", "conservative: areas of the shells
 RADIAL_EXACT = RadialScheme(
     "radial-exact", "flux between neighbours exact for the geometry's harmonic functions; the axis cell by its own balance", fluxes=EXACT_FLUX
 )
-HALF = Fraction(1, 2)

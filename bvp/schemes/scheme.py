@@ -12,18 +12,15 @@ from dataclasses import dataclass, field, replace
 from fractions import Fraction
 from typing import TYPE_CHECKING
 
-import numpy as np
-import numpy.typing as npt
-
-from bvp.errors import SchemeError
-from bvp.formula import parse, write
-from bvp.formula.tree import Indexed, Name, Node, Number, names_in, transform, walk
+from bvp.errors import SchemeError, nearest
+from bvp.formula import parse
+from bvp.formula.tree import Indexed, Name, Node, transform, walk
 
 if TYPE_CHECKING:
-    from bvp.formula import Vocabulary
-    from bvp.problem import Equation, Problem
+    import numpy as np
+    import numpy.typing as npt
 
-Array = npt.NDArray[np.float64]
+    from bvp.problem import Equation, Problem
 
 STEP = Name("#step")  # the step of a uniform grid, a leaf that nobody can type
 FORMULA_KEYS = ("denominator", "flux", "volume", "axis", "first", "end", "source", "right_hand_side", "equation")
@@ -69,7 +66,7 @@ class Scheme:
         if text is None:
             return None
         place = f"{self.origin or self.name}, {key}"
-        tree = parse(text, "scheme", scheme_vocabulary(problem.vocabulary), place)
+        tree = parse(text, "scheme", problem.vocabulary, place)
         return in_names_of(tree, problem, unknown)
 
     def replaced_terms(self, problem: Problem, unknown: str) -> list[tuple[Node, Node]]:
@@ -77,14 +74,16 @@ class Scheme:
         pairs = []
         for term, text in self.replacements.items():
             place = f"{self.origin or self.name}, replace"
-            left = parse(term, "equation", _with_stand_ins(problem.vocabulary), place)
-            right = parse(text, "scheme", scheme_vocabulary(problem.vocabulary), place)
+            left, right = (parse(side, "scheme", problem.vocabulary, place) for side in (term, text))
             pairs.append((in_names_of(left, problem, unknown), in_names_of(right, problem, unknown)))
         return pairs
 
-    def needs_uniform_grid(self) -> bool:
+    def needs_uniform_grid(self, problem: Problem) -> bool:
         """Whether its formulas hold the step, or a denominator, which have a meaning on uniform grids only."""
-        return "denominator" in self.texts or any(_holds_step(text) for text in [*self.texts.values(), *self.replacements.values()])
+        unknown = problem.unknowns[0]
+        trees = [self.formula(key, problem, unknown) for key in FORMULA_KEYS]
+        trees += [stands for _, stands in self.replaced_terms(problem, unknown)]
+        return "denominator" in self.texts or any(STEP in walk(tree) for tree in trees if tree is not None)
 
     def row(self, equation: Equation, unknown: str, shape: Shape) -> Node:
         """The difference equation at node k."""
@@ -98,24 +97,13 @@ class Scheme:
 
         return self.formula("end", shape.problem, unknown) or standard_first(unknown, shape)
 
-    def nodal_weights(self, nodes: Array, exponent: int) -> dict[str, Array]:
+    def nodal_weights(self, nodes: npt.NDArray[np.float64], exponent: int) -> dict[str, npt.NDArray[np.float64]]:
         """Coefficients by node that its rows hold as Indexed(name, 0); nodes with ghosts, physical, shape (N + 3,)."""
         return {}
 
     def with_origin(self, origin: str) -> Scheme:
         """The same scheme, its messages opening with another place."""
         return replace(self, origin=origin)
-
-
-def scheme_vocabulary(vocabulary: Vocabulary) -> Vocabulary:
-    """The vocabulary of a case with the stand-ins of a scheme: u and x for any unknown and coordinate, f, h or step."""
-    return vocabulary
-
-
-def _with_stand_ins(vocabulary: Vocabulary) -> Vocabulary:
-    extra = tuple(name for name in ("u",) if name not in vocabulary.all_names())
-    coordinate = vocabulary.coordinate
-    return replace(vocabulary, unknowns=(*vocabulary.unknowns, *extra), coordinate=coordinate)
 
 
 def in_names_of(tree: Node, problem: Problem, unknown: str) -> Node:
@@ -150,16 +138,8 @@ def shifted(tree: Node, offset: int) -> Node:
     return transform(tree, lambda node: Indexed(node.name, node.offset + offset) if isinstance(node, Indexed) else None)
 
 
-def _holds_step(text: str) -> bool:
-    import re
-
-    return re.search(r"\b(h|step)\b", text) is not None
-
-
 def check_typed(name: str, keys: Mapping[str, object], origin: str) -> None:
     """SchemeError unless every key is one that a scheme may have, with the right kind of value."""
-    from bvp.errors import nearest
-
     for key, value in keys.items():
         if key not in KEYS:
             raise SchemeError(f'{origin}: "{key}" is no key of a scheme. {nearest(key, list(KEYS))}')
@@ -176,11 +156,3 @@ def check_typed(name: str, keys: Mapping[str, object], origin: str) -> None:
     for key in ("volume",):
         if key in keys and "flux" not in keys:
             raise SchemeError(f'{origin}: "{key}" belongs to a "flux", which is missing.\nGive both, or neither.')
-
-
-def constant(value: float) -> Node:
-    """A number as a tree."""
-    return Number(value)
-
-
-__all__ = ["KEYS", "STEP", "Scheme", "Shape", "at_node", "check_typed", "in_names_of", "names_in", "shifted", "walk", "write"]
