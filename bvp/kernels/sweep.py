@@ -16,8 +16,6 @@ import numpy as np
 
 from bvp.kernels.jit import kernel
 
-FIXED, GHOST, AXIS = 0, 1, 2  # an end: its condition is the node's own row; it gives a ghost node; there is none at an axis
-WEAK = 1e-9  # a pivot that lost this share of its terms is a case for pivoting; the step's error stays below 1e-7 of it
 
 
 @kernel
@@ -33,6 +31,9 @@ def end_row(i, u, rows, numbers):
 
 
 # ---- from here on the text is the same in every generated module ----
+
+FIXED, GHOST, AXIS = 0, 1, 2  # an end: its condition is the node's own row; it gives a ghost node; there is none at an axis
+WEAK = 1e-9  # a pivot that lost this share of its terms is a case for pivoting; the step's error stays below 1e-7 of it
 
 
 @kernel

@@ -12,6 +12,7 @@ one-sided fluxes that the same identity gives, the ghost node included, so that 
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 from fractions import Fraction
 
@@ -64,6 +65,12 @@ class Compact(Scheme):
             average = term if average is None else Binary("+", average, term)
         assert average is not None
         return Binary("+", Binary("+", up, down), average if leading == Number(1.0) else over(average, leading))
+
+    @property
+    def weight_powers(self) -> Mapping[str, int]:
+        """Fluxes over volumes go like length^-2, fluxes over areas like 1/length, the ends' sources like length."""
+        ends = {f"#{name}": 1 for name in ("end_f_down", "end_f_here", "end_f_up")}
+        return {"#up": -2, "#down": -2, "#end_up": -1, "#end_down": -1, "#f_down": 0, "#f_here": 0, "#f_up": 0, **ends}
 
     def nodal_weights(self, nodes: Array, exponent: int) -> dict[str, Array]:
         """The weights of every node but the ghosts (theirs stay 0)."""

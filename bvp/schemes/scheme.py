@@ -101,6 +101,11 @@ class Scheme:
         """Coefficients by node that its rows hold as Indexed(name, 0); nodes with ghosts, physical, shape (N + 3,)."""
         return {}
 
+    @property
+    def weight_powers(self) -> Mapping[str, int]:
+        """How each of its nodal weights grows with the length of the domain, where that is a formula of parameters."""
+        return {}
+
     def with_origin(self, origin: str) -> Scheme:
         """The same scheme, its messages opening with another place."""
         return replace(self, origin=origin)
