@@ -8,10 +8,10 @@ from typing import TYPE_CHECKING, Any
 if TYPE_CHECKING:
     from bvp.grid import Grid
     from bvp.problem import Problem
-    from bvp.solve import solve
+    from bvp.one_state import solve
     from bvp.state import State
 
-_PLACES = {"Problem": "bvp.problem", "Grid": "bvp.grid", "State": "bvp.state", "solve": "bvp.solve", "MeasuredFunction": "bvp.measured"}
+_PLACES = {"Problem": "bvp.problem", "Grid": "bvp.grid", "State": "bvp.state", "solve": "bvp.one_state", "MeasuredFunction": "bvp.measured"}
 _MODULES = ("errors", "formula", "schemes")
 
 __all__ = ["Grid", "Problem", "State", "errors", "formula", "schemes", "solve"]

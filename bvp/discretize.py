@@ -14,6 +14,7 @@ from typing import Any
 import numpy as np
 import numpy.typing as npt
 
+from bvp.band import ScalarBand
 from bvp.formula import cancel, derivative, evaluate_all, float_functions
 from bvp.formula.arrays import numpy_functions
 from bvp.formula.tree import Indexed, Name, Node, walk
@@ -142,7 +143,7 @@ class DiscreteSystem:
         self._fill_arrays()
         self._numbers = self._all_numbers(self.values.get(discretization.along, 0.0))
         self.step, self.tangent = np.zeros(self.size), np.zeros(self.size)
-        self._work, self._info = np.zeros((3, self.size)), np.zeros(8)
+        self._work, self._info = np.zeros((3, self.size)), np.zeros(9)
         self._stored = None if discretization.compiled else np.zeros((5, self.size))
 
     # -- the grid's part ----------------------------------------------------------------------------------------------
@@ -231,8 +232,28 @@ class DiscreteSystem:
         """
         numbers = self.numbers(parameter)
         rows = self._rows if self._stored is None else self.stored_rows(u, parameter)
-        self.of.module.sweep(u, rows, numbers, self.left_kind, self.right_kind, direction, factor, corner, border, self._work, self.step, self.tangent, self._info)
+        self.of.module.sweep(
+            u, rows, numbers, self.left_kind, self.right_kind, direction, factor, corner, border, self._work, self.step, self.tangent, self._info
+        )
+        if self._info[4] > 0:
+            self._sweep_with_pivoting(u, parameter, direction, factor, corner, border)
         return self._info
+
+    def _sweep_with_pivoting(self, u: Array, parameter: float, direction: Array, factor: float, corner: float, border: float) -> None:
+        """The same correction and tangent where the elimination without pivoting met a weak pivot; nan where none can be had."""
+        rows = self.stored_rows(u, parameter)
+        finite = all(np.all(np.isfinite(rows[:, self.band.rows][index])) for index in range(5))
+        if not finite or not self.band.factor(rows, rows[4], factor * direction, corner).ok:
+            self._info[[0, 1, 2, 3]] = np.nan
+            return
+        self.step[:], self._info[0] = self.band.solve(-rows[0], -border)
+        self.tangent[:], self._info[1] = self.band.solve(np.zeros(self.size), 1.0)
+        self._info[2], self._info[3] = np.dot(self.step[1:-1], self.step[1:-1]), np.dot(self.tangent[1:-1], self.tangent[1:-1])
+
+    @cached_property
+    def band(self) -> ScalarBand:
+        """The matrix of this grid for solves with pivoting."""
+        return ScalarBand(self.size, self.left_kind, self.right_kind)
 
     def stored_rows(self, u: Array, parameter: float) -> Array:
         """r, a, b, c, q of every row, shape (5, n): 0 and n - 1 the conditions, 1 … n - 2 the nodes."""

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 from functools import partial
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from bvp.errors import InputError
 from cases.build import along_of, problem_of, refuse_not_built, scheme_of
@@ -14,6 +14,9 @@ from cases.faults import faults
 from cases.load import case_of, document_of, located, read_text
 from cases.published import BRANCH_POINT, quantities
 from cases.settings import Settings, asked_for
+
+if TYPE_CHECKING:
+    from bvp.problem import Problem
 
 MANY_DIGITS = 12  # beyond them the rounding of double precision shows in the turning points of ordinary problems
 
@@ -64,20 +67,20 @@ def _judged(case: Case, notices: list[str]) -> tuple[tuple[str, ...], tuple[str,
     tried(lambda: scheme_of(case, problem))
     for own in case.schemes:
         tried(partial(_typed, case, own, problem))
-    for formula, place in _formulas(case):
-        tried(partial(_read, formula, problem, place))
+    for formula, place, comparison in _formulas(case):
+        tried(partial(_read, formula, problem, place, comparison))
     return tuple(dict.fromkeys(wrong)), (*notices, *problem.notices, *_doubts(case))
 
 
-def _formulas(case: Case) -> Iterator[tuple[str, str]]:
-    """The formulas that only a run would read, each with its place."""
+def _formulas(case: Case) -> Iterator[tuple[str, str, bool]]:
+    """The formulas that only a run would read: each with its place, and whether it is to be a comparison."""
     for number, measure in enumerate(case.trace.measure, start=1):
-        yield measure, f"{case.origin}, [trace] measure {number}"
+        yield measure, f"{case.origin}, [trace] measure {number}", False
     if case.trace.until is not None:
-        yield case.trace.until, f"{case.origin}, [trace] until"
+        yield case.trace.until, f"{case.origin}, [trace] until", True
     for number, (_, quantity) in enumerate(_quietly(case), start=1):
         if quantity.measure:
-            yield quantity.measure, f"{case.origin}, [published {number}] quantity"
+            yield quantity.measure, f"{case.origin}, [published {number}] quantity", False
 
 
 def _quietly(case: Case) -> list[Any]:
@@ -87,13 +90,17 @@ def _quietly(case: Case) -> list[Any]:
         return []
 
 
-def _read(formula: str, problem: Any, place: str) -> None:
-    from bvp.formula import parse
+def _read(formula: str, problem: Problem, place: str, comparison: bool) -> None:
+    from bvp.measures import Measure
 
-    parse(formula, "measure", problem.vocabulary, place)
+    measure = Measure(formula, problem, place)
+    if comparison and measure.relation is None:
+        raise InputError(f'{place}: "{formula}" compares nothing.\nExpected: a comparison of measures, such as max(u) > 20.')
+    if not comparison and measure.relation is not None:
+        raise InputError(f'{place}: "{formula}" is a comparison.\nExpected: a measure, such as max(u).')
 
 
-def _typed(case: Case, name: str, problem: Any) -> None:
+def _typed(case: Case, name: str, problem: Problem) -> None:
     import bvp
 
     bvp.schemes.typed(name, case.schemes[name], problem, origin=f"{case.origin}, [scheme.{name}]")

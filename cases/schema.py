@@ -6,7 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Any
 
-MOST_INTERVALS = 20_000_000  # two thirds of a gigabyte of nodal values in double precision, work arrays included several
+MOST_INTERVALS = 50_000_000  # as `bvp.grid` has it; said again here because reading a case imports no numpy
 MOST_DIGITS = 15  # a double holds no more
 
 

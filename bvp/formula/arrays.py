@@ -1,4 +1,4 @@
-"""The functions of the formula language for NumPy arrays."""
+"""The functions of the language on arrays: NumPy's own where there is one."""
 
 from __future__ import annotations
 
@@ -6,24 +6,55 @@ from collections.abc import Callable
 from functools import cache
 from typing import Any
 
-from bvp.formula.evaluate import float_functions
-
 
 @cache
 def numpy_functions() -> dict[str, Callable[..., Any]]:
-    """The functions of the language for arrays; nan and inf where there is no value (warnings are the caller's)."""
+    """The functions of the language for arrays of floats; nan outside a domain, inf at an overflow, as NumPy has it.
+
+    NumPy warns where that happens: whoever evaluates decides with numpy.errstate.
+    """
     import numpy as np
+    from scipy.special import erf
 
     same = ("exp", "log", "sqrt", "sin", "cos", "tan", "sinh", "cosh", "tanh", "abs", "sign", "log1p", "expm1")
-    table: dict[str, Callable[..., Any]] = {name: getattr(np, name) for name in same}
-    for name in ("erf", "cardinal", "cardinal_slope"):
-        table[name] = np.vectorize(float_functions()[name], otypes=[float])
+
+    def cardinal(z: Any) -> Any:
+        half = np.sqrt(np.abs(z)) / 2.0
+        ratio = np.where(np.asarray(z) > 0.0, np.sin(half), np.sinh(half)) / np.where(half == 0.0, 1.0, half)
+        return np.where(half == 0.0, 1.0, ratio * ratio)
+
+    def cardinal_slope(z: Any) -> Any:
+        from bvp.formula.evaluate import CARDINAL_SLOPE
+
+        z = np.asarray(z, dtype=float)
+        near = np.abs(z) < 4.0
+        inner = np.where(near, z, 0.0)
+        series = np.zeros_like(inner)
+        for coefficient in reversed(CARDINAL_SLOPE):
+            series = coefficient + inner * series
+        outer = np.where(near, 4.0, z)
+        root = np.sqrt(np.abs(outer))
+        closed = (np.where(outer > 0.0, np.sin(root), np.sinh(root)) / root - cardinal(outer)) / outer
+        return np.where(near, series, closed)
+
+    def each(name: str) -> Callable[..., Any]:
+        """A function of numbers applied to each pair."""
+        from bvp.formula.evaluate import float_functions
+
+        return np.vectorize(float_functions()[name], otypes=[float])
+
     return {
-        **table,
+        **{name: getattr(np, name) for name in same},
         "asin": np.arcsin,
         "acos": np.arccos,
         "atan": np.arctan,
+        "erf": erf,
         "min": np.minimum,
         "max": np.maximum,
-        "step_le": lambda a, b: np.less_equal(a, b).astype(float) if isinstance(a, np.ndarray) or isinstance(b, np.ndarray) else float(a <= b),
+        "step_le": lambda a, b: np.where(np.less_equal(a, b), 1.0, 0.0),
+        "cardinal": cardinal,
+        "cardinal_slope": cardinal_slope,
+        "fit": each("fit"),
+        "fit_by_drift": each("fit_by_drift"),
+        "fit_by_slope": each("fit_by_slope"),
     }

@@ -71,22 +71,27 @@ def _float_power(base: float, exponent: float) -> float:
         return math.inf if base == 0.0 else math.nan
 
 
+CARDINAL_SLOPE = tuple((-1) ** (m + 1) * 2.0 * (m + 1) / math.factorial(2 * m + 4) for m in range(14))  # of z^m; 1e-16 up to |z| = 4
+
+
 def cardinal(z: float) -> float:
-    """4 sin^2(sqrt(z)/2)/z, entire in z: 1 - z/12 + z^2/360 - …; cosh for z < 0."""
-    if abs(z) < 1e-2:
-        return 1.0 - z / 12.0 * (1.0 - z / 30.0 * (1.0 - z / 56.0 * (1.0 - z / 90.0)))
-    root = math.sqrt(abs(z)) / 2.0
-    half = math.sin(root) if z > 0.0 else math.sinh(root)
-    return 4.0 * half * half / abs(z)
+    """4 sin^2(sqrt(z)/2)/z, entire in z: 1 - z/12 + z^2/360 - …; sinh for z < 0."""
+    half = math.sqrt(abs(z)) / 2.0
+    if half == 0.0:
+        return 1.0
+    ratio = (math.sin(half) if z > 0.0 else math.sinh(half)) / half
+    return ratio * ratio
 
 
 def cardinal_slope(z: float) -> float:
-    """The derivative of `cardinal`: (sin(sqrt z)/sqrt z - cardinal(z))/z."""
-    if abs(z) < 1e-1:
-        return -1.0 / 12.0 + z / 180.0 * (1.0 - z * 3.0 / 112.0 * (1.0 - z * 4.0 / 270.0 * (1.0 - z * 5.0 / 528.0)))
+    """The derivative of `cardinal`: (sin(sqrt z)/sqrt z - cardinal(z))/z, near 0 its series."""
+    if abs(z) < 4.0:
+        total = 0.0
+        for coefficient in reversed(CARDINAL_SLOPE):
+            total = total * z + coefficient
+        return total
     root = math.sqrt(abs(z))
-    ratio = math.sin(root) / root if z > 0.0 else math.sinh(root) / root
-    return (ratio - cardinal(z)) / z
+    return ((math.sin(root) if z > 0.0 else math.sinh(root)) / root - cardinal(z)) / z
 
 
 def _guarded(function: Callable[..., float]) -> Callable[..., float]:
@@ -99,6 +104,18 @@ def _guarded(function: Callable[..., float]) -> Callable[..., float]:
             return math.nan
 
     return guarded
+
+
+def _fitted_weight(part: int) -> Callable[[float, float], float]:
+    """The uncompiled twin of a kernel, fetched at its first call: numba is slow to import and `check` does without."""
+
+    def weight(p: float, z: float) -> float:
+        from bvp.kernels.jit import interpreted
+        from bvp.kernels.special import weight as compiled
+
+        return interpreted(compiled)(p, z, part)
+
+    return weight
 
 
 def _log(x: float) -> float:
@@ -127,27 +144,14 @@ def float_functions() -> dict[str, Callable[..., float]]:
         "sign": lambda x: math.nan if math.isnan(x) else float((x > 0) - (x < 0)),
         "step_le": lambda a, b: 1.0 if a <= b else 0.0,
         "cardinal": _guarded(cardinal),
-        "cardinal_slope": _guarded(cardinal_slope),
+        "cardinal_slope": lambda z: -_guarded(lambda z: -cardinal_slope(z))(z),
+        **{name: _guarded(_fitted_weight(part)) for part, name in enumerate(("fit", "fit_by_drift", "fit_by_slope"))},
     }
 
 
 @cache
 def mpmath_functions() -> dict[str, Callable[..., Any]]:
     """The functions of the language in mpmath's arithmetic, at the precision in force."""
-    import mpmath
+    from bvp.formula import precise
 
-    names = {"asin": "asin", "acos": "acos", "atan": "atan"}
-    table = {name: getattr(mpmath, names.get(name, name)) for name in ("exp", "log", "sqrt", "sin", "cos", "tan", "sinh", "cosh", "tanh", "asin", "acos", "atan", "erf", "expm1", "log1p")}
-
-    def entire(z: Any) -> Any:
-        return 2 * (1 - mpmath.cos(mpmath.sqrt(z))).real / z if z else mpmath.mpf(1)
-
-    return {
-        **table,
-        "abs": abs,
-        "min": min,
-        "max": max,
-        "sign": mpmath.sign,
-        "step_le": lambda a, b: mpmath.mpf(1 if a <= b else 0),
-        "cardinal": entire,
-    }
+    return precise.mpmath_functions()

@@ -13,6 +13,7 @@ from functools import cached_property
 from typing import Any
 
 TERMS = 10
+LARGEST_WHOLE_POWER = 1000  # beyond, a power is taken by logarithms
 ROUNDING = 64  # units in the last place; what is left of a sum below this is taken for 0. A choice, not derived
 
 
@@ -23,7 +24,7 @@ class SeriesError(ValueError):
 class Series:
     """coefficients[i] s^(valuation + i), s small and positive; leading zeros are dropped, so coefficients[0] is not 0."""
 
-    __slots__ = ("__dict__", "coefficients", "valuation")
+    __array_ufunc__ = None  # a NumPy number beside a series leaves the arithmetic to the series
 
     def __init__(self, coefficients: Sequence[Any], valuation: int = 0) -> None:
         first = next((i for i, c in enumerate(coefficients) if c != 0), len(coefficients))
@@ -120,7 +121,7 @@ class Series:
             if not exponent.is_constant:
                 return exponential(exponent * logarithm(self))
             exponent = exponent.coefficient(0)
-        if exponent == int(exponent) and abs(exponent) <= 64:
+        if abs(exponent) <= LARGEST_WHOLE_POWER and exponent == int(exponent):
             return self._whole_power(int(exponent))
         return self._real_power(exponent)
 
@@ -195,14 +196,14 @@ def _value(name: str, *at: Any) -> Any:
 
     plain = all(isinstance(number, (int, float)) for number in at)
     value = (float_functions() if plain else mpmath_functions())[name](*at)
-    if not (math.isfinite(value) if plain else at[0].context.isfinite(value) and not getattr(value, "imag", 0)):
+    if getattr(value, "imag", 0) or not math.isfinite(value.real):
         raise SeriesError(f"{name} at {', '.join(map(str, at))} is {value}")
     return value
 
 
 def _integrated(slope: Series, constant: Any, end: int) -> Series:
-    """The series with a given derivative and constant term, known below s^end."""
-    return Series([constant, *(slope.coefficient(n - 1) / n for n in range(1, end))])
+    """The series with a given derivative and constant term, known below s^end at most."""
+    return Series([constant, *(slope.coefficient(n - 1) / n for n in range(1, min(end, slope.end + 1)))])
 
 
 def differentiated(series: Series) -> Series:

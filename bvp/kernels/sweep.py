@@ -34,6 +34,7 @@ def end_row(i, u, rows, numbers):
 
 FIXED, GHOST, AXIS = 0, 1, 2  # an end: its condition is the node's own row; it gives a ghost node; there is none at an axis
 WEAK = 1e-9  # a pivot that lost this share of its terms is a case for pivoting; the step's error stays below 1e-7 of it
+UNLIKE = 1e-12  # couplings that are zero but for rounding have no sign
 
 
 @kernel
@@ -86,7 +87,7 @@ def sweep(u, rows, numbers, left_kind, right_kind, direction, factor, corner, bo
 
     u, step, tangent : (n,); direction : (n,); work : (3, n). info receives: 0 the parameter's correction, 1 the
     tangent's parameter, 2 and 3 the sums of squares of both over the nodes, 4 the count of weak pivots, 5 and 6 those of
-    positive and negative pivots at nodes with an equation, 7 the count of neighbours whose couplings differ in sign.
+    positive and negative pivots at nodes with an equation, 7 the count of neighbours whose couplings differ in sign, 8 the coupling of the middle node.
     """
     first, last = 1, u.shape[0] - 2
     middle = (first + last) // 2
@@ -117,7 +118,7 @@ def sweep(u, rows, numbers, left_kind, right_kind, direction, factor, corner, bo
     while i < middle or k > middle:
         if i < middle:
             r, a, b, c, q = row(i, u, rows, numbers)
-            if counted_left and a * outer <= 0.0:
+            if counted_left and a * outer < -UNLIKE * b * b:
                 unlike += 1
             loss = a * work[0, i - 1]
             pivot = b - loss
@@ -139,7 +140,7 @@ def sweep(u, rows, numbers, left_kind, right_kind, direction, factor, corner, bo
             i += 1
         if k > middle:
             s, d, e, c, p = row(k, u, rows, numbers)
-            if counted_right and c * inner <= 0.0:
+            if counted_right and c * inner < -UNLIKE * e * e:
                 unlike += 1
             loss = c * work[0, k + 1]
             pivot = e - loss
@@ -177,7 +178,7 @@ def sweep(u, rows, numbers, left_kind, right_kind, direction, factor, corner, bo
         column = q - a * work[2, middle - 1] - c * work[2, middle + 1]
         carried = factor * direction[middle] + left_border + right_border
         known, corner_here = known_left + known_right, corner - corner_left - corner_right
-        if (counted_left and a * outer <= 0.0) or (counted_right and c * inner <= 0.0):
+        if (counted_left and a * outer < -UNLIKE * b * b) or (counted_right and c * inner < -UNLIKE * b * b):
             unlike += 1
     if pivot > 0.0 and (middle != first or left_kind != FIXED):
         positive += 1
@@ -210,7 +211,7 @@ def sweep(u, rows, numbers, left_kind, right_kind, direction, factor, corner, bo
     tangent[last + 1] = (-ha * tangent[last - 1] - hb * tangent[last] - hq * pace) / hc
     nodes = last - first + 1 - (left_kind == FIXED) - (right_kind == FIXED)
     info[0], info[1], info[2], info[3] = parameter, pace, squares, tangent_squares
-    info[4], info[5], info[6], info[7] = weak, positive, nodes - positive, unlike
+    info[4], info[5], info[6], info[7], info[8] = weak, positive, nodes - positive, unlike, c
 
 
 @kernel

@@ -62,7 +62,7 @@ WRONG = [
     (["trace", "slb"], 'Did you mean "slab"'),
     (["trace", "slab", "sphere"], "one word too many"),
     (["trace", "slab", "--interval", "5"], 'Did you mean "--intervals"'),
-    (["trace", "slab", "--intervals", "1e12"], "outside 2 to 20000000"),
+    (["trace", "slab", "--intervals", "1e12"], "outside 2 to 50000000"),
     (["trace", "slab", "--intervals", "many"], '"many" is no whole number'),
     (["trace", "slab", "--intervals", "2.5"], "no whole number"),
     (["trace", "slab", "--intervals", "nan"], "no whole number"),

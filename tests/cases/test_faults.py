@@ -7,11 +7,15 @@ from pathlib import Path
 
 import pytest
 
+import bvp.geometry
+import bvp.grid
+import bvp.schemes.scheme
 from bvp.errors import InputError
+from bvp.grid import FEWEST_INTERVALS
 from cases.faults import faults
 from cases.kinds import KINDS
 from cases.load import load
-from cases.schema import CLOSED, DISCRETIZATION, OPEN, PUBLISHED, SCHEME, TOP, TRACE
+from cases.schema import CLOSED, DISCRETIZATION, GEOMETRY, MOST_INTERVALS, OPEN, PUBLISHED, SCHEME, TOP, TRACE
 
 GOOD = """
 title = "a slab"
@@ -63,7 +67,7 @@ BAD = [
     ('along = "lam"', 'along = "lam"\nmeasure = []', ['"measure"', "is empty"]),
     ('along = "lam"', 'along = "lam"\nmeasure = [1]', ['"measure"', "holds 1"]),
     ('along = "lam"', 'along = "lam"\nstart = 1979-05-27', ['"start": 1979-05-27 is not a number']),
-    ('along = "lam"', 'along = "lam"\n[discretization]\nintervals = 1000000000000', ['"intervals"', "is too large", "20000000"]),
+    ('along = "lam"', 'along = "lam"\n[discretization]\nintervals = 1000000000000', ['"intervals"', "is too large", "50000000"]),
     ('along = "lam"', 'along = "lam"\n[discretization]\nintervals = 1', ["is too small"]),
     ('along = "lam"', 'along = "lam"\n[discretization]\ndigits = 40', ["is too large", "at most 15"]),
     ('along = "lam"', 'along = "lam"\n[scheme]\ndenominator = "h^2"', ["[scheme]", "stands outside a scheme"]),
@@ -110,6 +114,13 @@ def test_defaults_pass_the_judgement_they_stand_in_for() -> None:
         for name, key in table.items():
             if key.default is not None:
                 assert KINDS[key.kind](key.default, key) is None, name
+
+
+def test_what_the_schema_says_again_is_what_the_lower_floors_say() -> None:
+    assert MOST_INTERVALS == bvp.grid.MOST_INTERVALS
+    assert FEWEST_INTERVALS == DISCRETIZATION["intervals"].least
+    assert set(SCHEME) == set(bvp.schemes.scheme.KEYS)
+    assert set(GEOMETRY.choices) == set(bvp.geometry.EXPONENTS)
 
 
 def test_several_faults_are_all_found() -> None:

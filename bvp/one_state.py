@@ -1,0 +1,103 @@
+"""Solve a problem at given parameter values on one grid: one state of the difference scheme."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+
+import numpy as np
+import numpy.typing as npt
+
+from bvp.discretize import Discretization, DiscreteSystem
+from bvp.grid import Grid
+from bvp.newton import Corrected, Scales, correct, held_parameter
+from bvp.problem import Problem
+from bvp.schemes import Scheme
+from bvp.state import State
+
+Array = npt.NDArray[np.float64]
+
+MOST_STEPS = 60
+POLISHED = 1e-13  # of the state: the last correction asked for, near the rounding of the solves
+
+
+def solve(
+    problem: Problem,
+    at: Mapping[str, float] | None = None,
+    *,
+    intervals: int = 200,
+    scheme: str | Scheme = "central",
+    grid: Grid | None = None,
+    guess: State | Array | None = None,
+    compiled: bool = True,
+) -> State:
+    """One state of the scheme at the given parameter values, by damped Newton from the initial guess.
+
+    Ends with `state.ok`, or with the last iterate and `state.reason`. Which of several states is found depends on the
+    guess; tracing a branch tells how many there are. InputError where the problem or the scheme cannot be discretized.
+    """
+    stated = problem.with_parameters(at or {})
+    used = grid or Grid(intervals)
+    along = next(iter(at or {}), None)
+    system = Discretization(stated, scheme, along, uniform=used.uniform, compiled=compiled).on(used)
+    parameter = stated.parameters.get(system.of.along, 0.0)
+    start = system.guess(parameter) if guess is None else np.asarray(guess.nodal if isinstance(guess, State) else guess, dtype=float)
+    return state_of(system, solved(system, start, parameter))
+
+
+def solved(system: DiscreteSystem, u: Array, parameter: float) -> Corrected:
+    """Newton's method at a fixed parameter from a profile, damped as far as it takes."""
+    spread = float(np.sqrt(np.mean(u[1:-1] ** 2)))
+    scale = max(spread, 1e-3 * _first_step(system, u, parameter), 1e-300)
+    scales = Scales(scale, max(abs(parameter), 1.0))
+    return correct(system, u, parameter, held_parameter(system, parameter), scales, tolerance=POLISHED, most_steps=MOST_STEPS, smallest_damping=2.0**-20)
+
+
+def _first_step(system: DiscreteSystem, u: Array, parameter: float) -> float:
+    border = held_parameter(system, parameter)
+    info = system.sweep(u, parameter, border.direction, 0.0, 1.0, 0.0)
+    size = float(np.sqrt(info[2] / (system.grid.intervals + 1)))
+    return size if np.isfinite(size) else 0.0
+
+
+def residual_of(system: DiscreteSystem, u: Array, parameter: float) -> float:
+    """The largest over the rows of |row| over the sum of the sizes of its terms: u's times their coefficients, and the rest."""
+    rows = system.stored_rows(u, parameter)
+    used = system.band.rows
+    values = np.pad(u, 1)
+    middle = np.clip(used, 1, system.size - 2)  # a condition is a row of the end node
+    parts = np.stack([rows[1 + offset, used] * values[middle + offset] for offset in range(3)])
+    residual = rows[0, used]
+    sizes = np.abs(parts).sum(axis=0) + np.abs(residual - parts.sum(axis=0))
+    with np.errstate(all="ignore"):
+        shares = np.where(sizes > 0, np.abs(residual) / sizes, np.abs(residual))
+    return float(np.max(shares))
+
+
+def state_of(system: DiscreteSystem, found: Corrected) -> State:
+    """The record of what Newton's method found."""
+    fixed = {**system.values, system.of.along: found.parameter} if system.of.along in system.values else dict(system.values)
+    return State(
+        problem=system.of.problem,
+        x=system.places(found.parameter),
+        u=found.u[1:-1].copy(),
+        parameters=fixed,
+        scheme=system.of.scheme.name,
+        intervals=system.grid.intervals,
+        ok=found.ok,
+        reason=found.reason,
+        residual=residual_of(system, found.u, found.parameter),
+        newton_steps=found.steps,
+        unstable_directions=unstable_directions(found),
+        nodal=found.u.copy(),
+    )
+
+
+def unstable_directions(found: Corrected) -> int | None:
+    """How many directions grow when the residual drives the evolution, by the signs of the pivots (Sylvester's law of inertia).
+
+    The row is oriented so that its highest derivative is dissipative: the couplings to the neighbours have the sign of
+    growth. None where neighbours couple with different signs, so that the matrix is no symmetric one in other units.
+    """
+    if not found.alike or not found.ok:
+        return None
+    return found.positive if found.coupling > 0 else found.negative
