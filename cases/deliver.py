@@ -2,26 +2,48 @@
 
 from __future__ import annotations
 
-import dataclasses
+import contextlib
 import sys
-import time
-from collections.abc import Mapping
-from dataclasses import dataclass
-from pathlib import Path
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass, replace
 from typing import Any
 
 from bvp.errors import InputError
 from cases import documents, report, run, settings, store
 from cases.build import along_of
 from cases.case import Case
+from cases.keep import Keeper
 from cases.load import load
 from cases.measured_data import read_columns
+from cases.pieces import Pieces
 from cases.progress import Watch
 from cases.results import Result, Traced
 from cases.settings import Settings, asked_for
 from cases.toml_text import measured_copy, toml_text
 
-SECONDS_BETWEEN_PIECES = 2.0
+
+@dataclass(frozen=True)
+class Question:
+    """What is to be computed: a command, the case as it is asked for, and what the command takes besides."""
+
+    command: str
+    case: Case
+    at: Mapping[str, float]
+    when: str
+    discrete: bool
+
+    @property
+    def command_line(self) -> str:
+        """How the run was asked for, as it stands above the case as it was run."""
+        words = [f"hairpin {self.command} {self.case.name}", *(f"--at {name}={value!r}" for name, value in self.at.items())]
+        words += [f'--when "{self.when}"'] if self.when else []
+        words += ["--discrete"] if self.discrete else []
+        return " ".join(words) + "\nDefaults and options are written out below."
+
+    @property
+    def identity(self) -> dict[str, str]:
+        """What a folder remembers of the question."""
+        return store.identity_of(self.command, self.case.name, toml_text(self.case) + self.command_line)
 
 
 @dataclass(frozen=True)
@@ -38,80 +60,98 @@ def run_and_deliver(command: str, name_or_path: str, asked: Settings, *, when: s
     A folder that cannot be written at the end costs nothing but the folder: the text still comes back.
     """
     settings.refuse_not_built(asked)
-    case = load(name_or_path)
-    along = along_of(case)
     # `solve` follows the branch from the case's own start to the value asked for.
-    kept = (
-        dataclasses.replace(asked, at={name: value for name, value in asked.at.items() if name != along}) if command == "solve" else asked
-    )
-    _refuse_unknown(case, asked)
-    case, notices = asked_for(case, kept)
-    if command == "solve":
-        notices = []  # nothing is held against published values there
-    remark = _command_line(command, case, asked, when, discrete)
-    folder = None
-    if asked.out is not None:
-        folder = store.open_folder(asked.out)
+    case, notices = asked_for(load(name_or_path), asked, keep_start=command == "solve")
+    question = Question(command, case, asked.at, when or "", discrete)
+    along_of(case)
+    if asked.out is None:
+        return _outcome(_computed(question, notices, asked, None), asked, None)
+    folder = store.open_folder(asked.out)
     try:
-        identity = store.identity_of(command, case.name, toml_text(case) + remark)
-        if folder is not None:
-            earlier = _begin(folder, identity, asked, case, remark)
-            if earlier is not None:
-                return Outcome(earlier)
-        _say_first_run(asked)
-        with Watch(along, quiet=asked.quiet, also=None) as watch:
-            result = _work(command, case, asked, when, discrete, watch)
-        result = dataclasses.replace(result, notes=(*notices, *result.notes))
-        troubles = [] if result.complete else [result.reason]
-        document = documents.document_of(result)
-        text = report.text_of(result)
-        if folder is not None:
-            try:
-                save(folder, result, document, text, identity)
-                if not asked.quiet:
-                    print(f"written to {asked.out}", file=sys.stderr)
-            except store.StoreError as error:
-                troubles.append(f"{error}\nThe result itself was computed and is printed.")
-        return Outcome(documents.json_text(document) + "\n" if asked.json else text, tuple(troubles))
+        earlier = _finished_earlier(folder, question, asked) if asked.resume else None
+        if earlier is not None:
+            return earlier
+        _begin(folder, question)
+        return _outcome(_computed(question, notices, asked, folder), asked, folder, question.identity)
     finally:
-        if folder is not None:
-            folder.close()
+        folder.close()
 
 
-def _work(command: str, case: Case, asked: Settings, when: str | None, discrete: bool, watch: Watch) -> Result:
-    if command == "trace":
-        return run.trace(case, watch)
-    if command == "solve":
-        return run.solve(case, asked.at, discrete=discrete, watch=watch)
-    return run.reach(case, when or "", watch)
+def _computed(question: Question, notices: list[str], asked: Settings, folder: store.Folder | None) -> Result:
+    _say_first_run(asked)
+    with _keeping(folder, asked) as keeper, Watch(along_of(question.case), quiet=asked.quiet, also=keeper) as watch:
+        if question.command == "trace":
+            result: Result = run.trace(question.case, watch)
+        elif question.command == "solve":
+            result = run.solve(question.case, question.at, discrete=question.discrete, watch=watch)
+        else:
+            result = run.reach(question.case, question.when, watch)
+    # The notices are about published values, which a trace alone is held against.
+    return replace(result, notes=(*notices, *result.notes)) if isinstance(result, Traced) else result
 
 
-def _begin(folder: store.Folder, identity: Mapping[str, str], asked: Settings, case: Case, remark: str) -> str | None:
-    """Mark the folder and put the case into it; the text of an earlier, finished result where `--resume` finds one."""
-    store.refuse_other_run(folder.path, identity)
-    unfinished, finished = store.mark_of(folder.path)
-    if asked.resume:
-        same = finished is not None and finished.get("asked") == identity["asked"]
-        if finished is not None and same and finished.get("complete") and store.intact(folder.path, finished):
-            if not asked.quiet:
-                print(f"{folder.path} holds this result already, finished.", file=sys.stderr)
-            return (folder.path / (store.RESULT if asked.json else store.REPORT)).read_text(encoding="utf-8")
-        if unfinished is None and finished is None:
-            raise InputError(f"--resume: {folder.path} holds no unfinished work.\nLeave --resume out to begin.")
-        if unfinished is not None and unfinished.get("asked") != identity["asked"]:
-            raise InputError(
-                f"--resume: the work in {folder.path} was begun with another case file or options.\nUse the same, or leave --resume out."
-            )
+@contextlib.contextmanager
+def _keeping(folder: store.Folder | None, asked: Settings) -> Iterator[Keeper | None]:
+    """What keeps the points of a trace while it goes on; whatever ends the work, those that came last are kept too."""
+    if folder is None:
+        yield None
+        return
+    keeper = Keeper(Pieces(folder.partial), quiet=asked.quiet)
     try:
-        folder.begin(identity)
-        folder.write(store.CASE, toml_text(case, remark).encode())
+        yield keeper
+    finally:
+        keeper.flush()
+
+
+def _outcome(result: Result, asked: Settings, folder: store.Folder | None, identity: Mapping[str, str] | None = None) -> Outcome:
+    troubles = [] if result.complete else [result.reason]
+    document, text = documents.document_of(result), report.text_of(result)
+    if folder is not None:
+        try:
+            save(folder, result, document, text, identity or {})
+            if not asked.quiet:
+                print(f"written to {folder.path}", file=sys.stderr)
+        except store.StoreError as error:
+            troubles.append(f"{error}\nThe result itself was computed and is printed.")
+    return Outcome(documents.json_text(document) + "\n" if asked.json else text, tuple(troubles))
+
+
+# -- folders ----------------------------------------------------------------------------------------------------------
+
+
+def _finished_earlier(folder: store.Folder, question: Question, asked: Settings) -> Outcome | None:
+    """The text of a finished result that `--resume` finds; InputError where it finds nothing that belongs to the question."""
+    store.refuse_other_run(folder.path, question.identity)
+    unfinished, finished = store.mark_of(folder.path)
+    if unfinished is None and finished is None:
+        raise InputError(f"--resume: {folder.path} holds no unfinished work.\nLeave --resume out to begin.")
+    mark = unfinished if unfinished is not None else finished
+    if mark is None or mark.get("asked") != question.identity["asked"]:
+        raise InputError(
+            f"--resume: the work in {folder.path} was begun with another case file or options.\nUse the same, or leave --resume out."
+        )
+    if finished == mark and finished.get("complete") and store.intact(folder.path, finished):
+        if not asked.quiet:
+            print(f"{folder.path} holds this result already, finished.", file=sys.stderr)
+        return Outcome((folder.path / (store.RESULT if asked.json else store.REPORT)).read_text(encoding="utf-8"))
+    if not asked.quiet:
+        print("the work was not finished; going on in the middle of it is not built yet, so it begins anew.", file=sys.stderr)
+    return None
+
+
+def _begin(folder: store.Folder, question: Question) -> None:
+    """Mark the folder and put the case into it, before any work is done; InputError where that cannot be."""
+    case = question.case
+    store.refuse_other_run(folder.path, question.identity)
+    try:
+        folder.begin(question.identity)
+        folder.write(store.CASE, toml_text(case, question.command_line).encode())
         for name, file in case.measured.items():
             first, second = read_columns(case.folder / file, f"{case.origin}, [measured] {name}")
             lines = [f"{x!r},{y!r}" for x, y in zip(first, second, strict=True)]
             folder.write(measured_copy(name), ("\n".join(lines) + "\n").encode())
     except store.StoreError as error:
         raise InputError(f"--out: {error}\nChoose another folder.") from None
-    return None
 
 
 def save(folder: store.Folder, result: Result, document: Mapping[str, Any], text: str, identity: Mapping[str, str]) -> None:
@@ -136,20 +176,6 @@ def _figures(result: Traced) -> dict[str, bytes]:
     return rendered(branch_figure(result.branches[0], title=case.title, caution=case.caution or None, published=result.compared))
 
 
-def _refuse_unknown(case: Case, asked: Settings) -> None:
-    """InputError for a parameter that the case has not; `solve` takes the traced one out before `asked_for` sees it."""
-    asked_for(case, asked)
-
-
-def _command_line(command: str, case: Case, asked: Settings, when: str | None, discrete: bool) -> str:
-    """How the run was asked for, as a remark above the case as it was run."""
-    words = [f"hairpin {command} {case.name}"]
-    words += [f"--at {name}={value!r}" for name, value in asked.at.items()]
-    words += [f'--when "{when}"'] if when else []
-    words += ["--discrete"] if discrete else []
-    return " ".join(words) + "\nDefaults and options are written out below."
-
-
 def _say_first_run(asked: Settings) -> None:
     """One line before kernels are compiled for the first time, which takes seconds."""
     from bvp.cache_folder import cache_folder
@@ -157,6 +183,3 @@ def _say_first_run(asked: Settings) -> None:
     folder = cache_folder()
     if not asked.quiet and folder is not None and not any(folder.iterdir()):
         print("compiling kernels, once for this version: some seconds", file=sys.stderr)
-
-
-__all__ = ["Outcome", "Path", "run_and_deliver", "save", "time"]

@@ -40,33 +40,32 @@ def refuse_not_built(settings: Settings) -> None:
         raise InputError("--resume needs the folder to go on from.\nGive it with --out DIR.")
 
 
-def asked_for(case: Case, settings: Settings) -> tuple[Case, list[str]]:
+def asked_for(case: Case, settings: Settings, *, keep_start: bool = False) -> tuple[Case, list[str]]:
     """The case with what the settings change in it, and notices about that.
 
     A parameter set to another value than the case's takes the published values out, which hold for the case's own;
-    for the traced parameter `--at` gives the value at the first state, and they stay.
+    for the traced parameter `--at` gives the value at the first state, and they stay. With keep_start its value and
+    its start stay those of the case: `hairpin solve` starts there and goes to the value asked for.
     """
     for name in settings.at:
         if name not in case.parameters:
             known = list(case.parameters)
             raise InputError(f'{case.origin}: there is no parameter "{name}" for --at. {nearest(name, known) if known else "It has none."}')
+    along = case.trace.along
+    at = {name: value for name, value in settings.at.items() if not (keep_start and name == along)}
     notices = []
-    parameters = {**case.parameters, **settings.at}
-    changed = [name for name in settings.at if name != case.trace.along and parameters[name] != case.parameters[name]]
+    changed = [name for name, value in at.items() if name != along and value != case.parameters[name]]
     published = case.published
     if changed and published:
         own = ", ".join(f"{name} = {case.parameters[name]:.17g}" for name in changed)
         notices.append(f"the published values of this case hold for {own} and are left out.")
         published = ()
-    question = case.trace
-    if question.along is not None and question.along in settings.at:
-        question = replace(question, start=settings.at[question.along])
-    how = case.discretization
+    question = replace(case.trace, start=at[along]) if along is not None and along in at else case.trace
     how = replace(
-        how,
-        scheme=settings.scheme or how.scheme,
-        intervals=settings.intervals or how.intervals,
-        grid=settings.grid or how.grid,
-        digits=settings.digits or how.digits,
+        case.discretization,
+        scheme=settings.scheme or case.discretization.scheme,
+        intervals=settings.intervals or case.discretization.intervals,
+        grid=settings.grid or case.discretization.grid,
+        digits=settings.digits or case.discretization.digits,
     )
-    return replace(case, parameters=parameters, trace=question, discretization=how, published=published), notices
+    return replace(case, parameters={**case.parameters, **at}, trace=question, discretization=how, published=published), notices

@@ -9,4 +9,19 @@ from bvp.formula.tree import Node
 from bvp.formula.vocabulary import Vocabulary
 from bvp.formula.write import write
 
-__all__ = ["Node", "Vocabulary", "cancel", "derivative", "down", "evaluate", "evaluate_all", "folded", "float_functions", "mpmath_functions", "parse", "source", "up", "write"]
+__all__ = [
+    "Node",
+    "Vocabulary",
+    "cancel",
+    "derivative",
+    "down",
+    "evaluate",
+    "evaluate_all",
+    "float_functions",
+    "folded",
+    "mpmath_functions",
+    "parse",
+    "source",
+    "up",
+    "write",
+]

@@ -7,9 +7,14 @@ differences themselves are exact in floating point for neighbours within a facto
 
 from __future__ import annotations
 
+from collections.abc import Callable, Mapping
 from fractions import Fraction
 
 from bvp.formula.tree import Binary, Call, Indexed, Name, Negative, Node, Number
+
+OFFSETS = {Fraction(-1), Fraction(0), Fraction(1)}
+LARGEST_EXACT = 2**53  # whole numbers up to here are floating-point numbers
+LARGEST_FACTOR = Fraction(10) ** 300  # a factor beyond is no floating-point number, and the sum is left as it is
 
 
 def up(name: str) -> Name:
@@ -28,23 +33,20 @@ def cancel(tree: Node, only: frozenset[str] | None = None) -> Node:
 
     def of(node: Node) -> Node:
         if node not in done:
-            done[node] = _combined(node, of, only) if _is_sum(node) else _rewritten(node, of)
+            done[node] = _combined(node, of, only) if _is_sum(node) else _rewritten(node, of, only)
         return done[node]
 
     return of(tree)
 
 
-def _rewritten(node: Node, of) -> Node:  # type: ignore[no-untyped-def]
-    """log(A/B) as log1p((A - B)/B) and exp(A) - 1 as expm1(A) where that helps; any other node over its cancelled parts."""
+def _rewritten(node: Node, of: Callable[[Node], Node], only: frozenset[str] | None) -> Node:
+    """log(A/B) as log1p((A - B)/B) where nodal values of A cancel against those of B; any other node over its cancelled parts."""
     if isinstance(node, Call) and node.function == "log" and isinstance(node.arguments[0], Binary) and node.arguments[0].operator == "/":
         above, below = node.arguments[0].left, node.arguments[0].right
         excess = Binary("-", above, below)
-        shorter = of(excess)
-        if shorter != excess:
-            return Call("log1p", (Binary("/", shorter, of(below)),))
-    if not node.parts:
-        return node
-    parts = tuple(of(part) for part in node.parts)
+        if _differences(excess, only).keys() - _differences(above, only).keys() - _differences(below, only).keys():
+            return Call("log1p", (Binary("/", of(excess), of(below)),))
+    parts = tuple(map(of, node.parts))
     return node if all(new is old for new, old in zip(parts, node.parts, strict=True)) else node.rebuilt(parts)
 
 
@@ -68,17 +70,36 @@ def _terms(node: Node, factor: Fraction, into: list[tuple[Fraction, Node]]) -> N
         into.append((factor, node))
 
 
-def _combined(node: Node, of, only: frozenset[str] | None) -> Node:  # type: ignore[no-untyped-def]
-    terms: list[tuple[Fraction, Node]] = []
-    _terms(node, Fraction(1), terms)
-    nodal: dict[str, dict[Fraction, Fraction]] = {}
+def _weights(terms: list[tuple[Fraction, Node]]) -> dict[str, dict[Fraction, Fraction]]:
+    """The coefficients of the nodal values of each name."""
+    weights: dict[str, dict[Fraction, Fraction]] = {}
     for factor, term in terms:
         if isinstance(term, Indexed) and term.offset.denominator == 1:
-            weights = nodal.setdefault(term.name, {})
-            weights[term.offset] = weights.get(term.offset, Fraction(0)) + factor
-    differences = {name: weights for name, weights in nodal.items() if sum(weights.values()) == 0 and (only is None or name in only)}
+            of_name = weights.setdefault(term.name, {})
+            of_name[term.offset] = of_name.get(term.offset, Fraction(0)) + factor
+    return weights
+
+
+def _differences(node: Node, only: frozenset[str] | None) -> Mapping[str, dict[Fraction, Fraction]]:
+    """The names whose nodal values in a sum have coefficients that add up to 0, with these."""
+    terms: list[tuple[Fraction, Node]] = []
+    _terms(node, Fraction(1), terms)
+    if any(factor and not 1 / LARGEST_FACTOR < abs(factor) < LARGEST_FACTOR for factor, _ in terms):
+        return {}
+    named = _weights(terms).items()
+    return {
+        name: weights
+        for name, weights in named
+        if not sum(weights.values()) and weights.keys() <= OFFSETS and (only is None or name in only)
+    }
+
+
+def _combined(node: Node, of: Callable[[Node], Node], only: frozenset[str] | None) -> Node:
+    differences = _differences(node, only)
     if not differences:
-        return _rewritten(_expm1(node), of)
+        return _rewritten(_expm1(node), of, only)
+    terms: list[tuple[Fraction, Node]] = []
+    _terms(node, Fraction(1), terms)
     total: Node | None = None
     written: set[str] = set()
     for factor, term in terms:
@@ -107,8 +128,16 @@ def _expm1(node: Node) -> Node:
 def _added(total: Node | None, factor: Fraction, term: Node) -> Node | None:
     if factor == 0:
         return total
-    size = abs(factor)
-    scaled = term if size == 1 else Binary("*", Number(float(size)), term)
+    scaled = _scaled(abs(factor), term)
     if total is None:
         return scaled if factor > 0 else Negative(scaled)
     return Binary("+" if factor > 0 else "-", total, scaled)
+
+
+def _scaled(size: Fraction, term: Node) -> Node:
+    """size * term; a third of it as term/3, which is rounded once."""
+    above, below = size.numerator, size.denominator
+    if Fraction(float(size)) == size or max(above, below) > LARGEST_EXACT:
+        return term if size == 1 else Binary("*", Number(float(size)), term)
+    product = term if above == 1 else Binary("*", Number(float(above)), term)
+    return Binary("/", product, Number(float(below)))

@@ -1,10 +1,26 @@
-"""Exact derivatives of trees. Zeros and ones are folded, nothing is rearranged: the order of operations decides the rounding."""
+"""Exact derivatives of trees. Literals are folded where that is exact, nothing is rearranged: the order of operations decides the rounding."""
 
 from __future__ import annotations
 
-from bvp.formula.tree import Binary, Call, Negative, Node, Number
+import math
+import operator
+from collections.abc import Callable
+from fractions import Fraction
+
+from bvp.formula.tree import Binary, Call, Negative, Node, Number, bottom_up, number_of
 
 ZERO, ONE, TWO = Number(0.0), Number(1.0), Number(2.0)
+
+
+def _literal(sign: str, left: Node, right: Node) -> Number | None:
+    """The sum, difference or product of two literals where it is exact, so that 40 digits would give the same."""
+    if not (isinstance(left, Number) and isinstance(right, Number)):
+        return None
+    carry_out = {"+": operator.add, "-": operator.sub, "*": operator.mul}[sign]
+    value = carry_out(left.value, right.value)
+    if not math.isfinite(value) or Fraction(value) != carry_out(Fraction(left.value), Fraction(right.value)):
+        return None
+    return Number(value)
 
 
 def add(left: Node, right: Node) -> Node:
@@ -15,7 +31,7 @@ def add(left: Node, right: Node) -> Node:
         return left
     if isinstance(right, Negative):
         return subtract(left, right.operand)
-    return Binary("+", left, right)
+    return _literal("+", left, right) or Binary("+", left, right)
 
 
 def subtract(left: Node, right: Node) -> Node:
@@ -24,7 +40,7 @@ def subtract(left: Node, right: Node) -> Node:
         return left
     if left == ZERO:
         return negative(right)
-    return Binary("-", left, right)
+    return _literal("-", left, right) or Binary("-", left, right)
 
 
 def negative(tree: Node) -> Node:
@@ -42,9 +58,7 @@ def multiply(left: Node, right: Node) -> Node:
         return right
     if right == ONE:
         return left
-    if isinstance(left, Number) and isinstance(right, Number):
-        return Number(left.value * right.value)
-    return Binary("*", left, right)
+    return _literal("*", left, right) or Binary("*", left, right)
 
 
 def divide(left: Node, right: Node) -> Node:
@@ -62,47 +76,39 @@ def raise_to(base: Node, exponent: float) -> Node:
 
 
 def folded(tree: Node) -> Node:
-    """The tree with sums and products of literal zeros and ones carried out, nothing else changed."""
-    if isinstance(tree, Negative):
-        return negative(folded(tree.operand))
-    if isinstance(tree, Binary):
-        left, right = folded(tree.left), folded(tree.right)
-        if tree.operator == "^":
-            return raise_to(left, right.value) if isinstance(right, Number) else Binary("^", left, right)
-        return {"+": add, "-": subtract, "*": multiply, "/": divide}[tree.operator](left, right)
-    if tree.parts:
-        return tree.rebuilt(tuple(folded(part) for part in tree.parts))
-    return tree
+    """The tree with literal zeros and ones, and exact sums and products of literals, carried out; nothing else changed."""
+    done: dict[Node, Node] = {}
+    for node in bottom_up([tree], lambda node: bool(node.parts)):
+        if isinstance(node, Negative):
+            done[node] = negative(done[node.operand])
+        elif isinstance(node, Binary):
+            left, right = done[node.left], done[node.right]
+            if node.operator != "^":
+                done[node] = {"+": add, "-": subtract, "*": multiply, "/": divide}[node.operator](left, right)
+            else:
+                done[node] = raise_to(left, right.value) if isinstance(right, Number) else Binary("^", left, right)
+        else:
+            done[node] = node.rebuilt(tuple(done[part] for part in node.parts)) if node.parts else node
+    return done[tree]
 
 
 def derivative(tree: Node, leaf: Node) -> Node:
     """The exact derivative of a tree by one of its leaves (Name, Indexed, Prime or At); other leaves are held fixed."""
     done: dict[Node, Node] = {}
 
-    def by(node: Node) -> Node:
-        if node == leaf:
-            return ONE
-        if node not in done:
-            done[node] = _of_kind(node)
-        return done[node]
+    def is_operation(node: Node) -> bool:
+        return node != leaf and isinstance(node, (Binary, Negative, Call))
 
-    def _of_kind(node: Node) -> Node:
-        if isinstance(node, Negative):
-            return negative(by(node.operand))
-        if isinstance(node, Binary):
-            return _of_operation(node)
-        if isinstance(node, Call):
-            total: Node = ZERO
-            for number, part in enumerate(node.arguments):
-                inner = by(part)
-                if inner != ZERO:
-                    total = add(total, multiply(partial(node, number), inner))
-            return total
-        return ZERO
+    def of_call(node: Call) -> Node:
+        total: Node = ZERO
+        for number, part in enumerate(node.arguments):
+            if done[part] != ZERO:
+                total = add(total, multiply(partial(node, number), done[part]))
+        return total
 
-    def _of_operation(node: Binary) -> Node:
+    def of_operation(node: Binary) -> Node:
         left, right = node.left, node.right
-        dl, dr = by(left), by(right)
+        dl, dr = done[left], done[right]
         if node.operator == "+":
             return add(dl, dr)
         if node.operator == "-":
@@ -113,13 +119,23 @@ def derivative(tree: Node, leaf: Node) -> Node:
             return divide(dl, right) if dr == ZERO else divide(subtract(dl, multiply(node, dr)), right)
         total: Node = ZERO
         if dl != ZERO:
-            lowered = raise_to(left, right.value - 1.0) if isinstance(right, Number) else Binary("^", left, subtract(right, ONE))
+            exponent = number_of(right)
+            lowered = Binary("^", left, subtract(right, ONE)) if exponent is None else raise_to(left, exponent - 1.0)
             total = multiply(multiply(right, lowered), dl)
         if dr != ZERO:
             total = add(total, multiply(multiply(node, Call("log", (left,))), dr))
         return total
 
-    return by(tree)
+    for node in bottom_up([tree], is_operation):
+        if node == leaf:
+            done[node] = ONE
+        elif isinstance(node, Negative):
+            done[node] = negative(done[node.operand])
+        elif isinstance(node, Binary):
+            done[node] = of_operation(node)
+        else:
+            done[node] = of_call(node) if isinstance(node, Call) else ZERO
+    return done[tree]
 
 
 def partial(call: Call, number: int) -> Node:
@@ -127,7 +143,7 @@ def partial(call: Call, number: int) -> Node:
     name, arguments = call.function, call.arguments
     x = arguments[number]
     square = Binary("^", x, TWO)
-    rules = {
+    rules: dict[str, Callable[[], Node]] = {
         "exp": lambda: call,
         "log": lambda: divide(ONE, x),
         "sqrt": lambda: divide(Number(0.5), call),
@@ -147,11 +163,13 @@ def partial(call: Call, number: int) -> Node:
         "log1p": lambda: divide(ONE, add(ONE, x)),
         "expm1": lambda: Call("exp", arguments),
         "cardinal": lambda: Call("cardinal_slope", arguments),
-        "min": lambda: Call("step_le", (x, arguments[1 - number])),
-        "max": lambda: Call("step_le", (arguments[1 - number], x)),
+        "min": lambda: _share(Call("step_le", arguments), number),
+        "max": lambda: _share(Call("step_le", arguments[::-1]), number),
     }
-    if name in ("fit", "fit_by_drift", "fit_by_slope"):
-        return _partial_of_fit(call, number)
+    if name == "fit":
+        return Call(("fit_by_drift", "fit_by_slope")[number], arguments)
+    if name in ("cardinal_slope", "fit_by_drift", "fit_by_slope"):
+        raise AssertionError(f"{name} has no derivative here: second derivatives of the fitted scheme are taken by differences")
     if name in rules:
         return rules[name]()
     orders = list(call.orders or (0,) * len(arguments))
@@ -159,7 +177,6 @@ def partial(call: Call, number: int) -> Node:
     return Call(name, arguments, tuple(orders))
 
 
-def _partial_of_fit(call: Call, number: int) -> Node:
-    if call.function != "fit":
-        raise AssertionError("second derivatives of the fitted weights are taken by differences")
-    return Call(("fit_by_drift", "fit_by_slope")[number], call.arguments)
+def _share(first: Node, number: int) -> Node:
+    """The part of a min or max that follows its first argument, or what that leaves for the second: together 1 in a tie too."""
+    return first if number == 0 else subtract(ONE, first)

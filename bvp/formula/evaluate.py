@@ -7,41 +7,42 @@ from collections.abc import Callable, Mapping, Sequence
 from functools import cache
 from typing import Any
 
-from bvp.formula.tree import Binary, Call, Negative, Node, Number
+from bvp.formula.tree import Binary, Call, Negative, Node, Number, bottom_up
 
 Functions = Mapping[str, Callable[..., Any]]
 
 
-def evaluate(tree: Node, value: Callable[[Any], Any], functions: Functions) -> Any:
+def evaluate(tree: Node, value: Callable[[Any], Any], functions: Functions, number: Callable[[float], Any] = float) -> Any:
     """The value of a tree; `value` is asked for every leaf (Name, Indexed, Prime, At), each subtree is worked out once.
 
-    Raises what the arithmetic raises; the tables here give nan or inf instead wherever floats can.
+    `number` makes what stands for a literal: `precise.typed` where 1/3 is to have 40 digits too. Raises what the
+    arithmetic raises; the tables here give nan or inf instead wherever floats can.
     """
-    return evaluate_all([tree], value, functions)[0]
+    return evaluate_all([tree], value, functions, number)[0]
 
 
-def evaluate_all(trees: Sequence[Node], value: Callable[[Any], Any], functions: Functions) -> list[Any]:
+def evaluate_all(
+    trees: Sequence[Node], value: Callable[[Any], Any], functions: Functions, number: Callable[[float], Any] = float
+) -> list[Any]:
     """The values of several trees, subtrees that they share worked out once."""
     done: dict[Node, Any] = {}
 
-    def of(node: Node) -> Any:
-        if isinstance(node, Number):
-            return node.value
-        if node in done:
-            return done[node]
-        if isinstance(node, Binary):
-            result = _operate(node.operator, of(node.left), of(node.right))
-        elif isinstance(node, Negative):
-            result = -of(node.operand)
-        elif isinstance(node, Call) and node.function in functions:
-            inside = [of(part) for part in node.arguments]
-            result = functions[node.function](*inside, orders=node.orders) if node.orders else functions[node.function](*inside)
-        else:
-            result = value(node)
-        done[node] = result
-        return result
+    def is_operation(node: Node) -> bool:
+        return isinstance(node, (Binary, Negative)) or (isinstance(node, Call) and node.function in functions)
 
-    return [of(tree) for tree in trees]
+    for node in bottom_up(trees, is_operation):
+        if isinstance(node, Number):
+            done[node] = number(node.value)
+        elif isinstance(node, Binary):
+            done[node] = _operate(node.operator, done[node.left], done[node.right])
+        elif isinstance(node, Negative):
+            done[node] = -done[node.operand]
+        elif isinstance(node, Call) and node.function in functions:
+            inside = [done[part] for part in node.arguments]
+            done[node] = functions[node.function](*inside, orders=node.orders) if node.orders else functions[node.function](*inside)
+        else:
+            done[node] = value(node)
+    return [done[tree] for tree in trees]
 
 
 def _operate(operator: str, left: Any, right: Any) -> Any:
@@ -66,7 +67,7 @@ def _float_power(base: float, exponent: float) -> float:
     try:
         return math.pow(base, exponent)
     except OverflowError:
-        return math.inf
+        return -math.inf if base < 0.0 and exponent % 2.0 == 1.0 else math.inf
     except ValueError:
         return math.inf if base == 0.0 else math.nan
 
@@ -132,15 +133,18 @@ def _sinh(x: float) -> float:
 @cache
 def float_functions() -> dict[str, Callable[..., float]]:
     """The functions of the language for Python floats; nan outside a domain, inf at an overflow, never an exception."""
-    plain = {name: getattr(math, name) for name in ("exp", "sqrt", "sin", "cos", "tan", "cosh", "tanh", "asin", "acos", "atan", "erf", "log1p", "expm1")}
+    plain = {
+        name: getattr(math, name)
+        for name in ("exp", "sqrt", "sin", "cos", "tan", "cosh", "tanh", "asin", "acos", "atan", "erf", "log1p", "expm1")
+    }
     table = {name: _guarded(function) for name, function in plain.items()}
     return {
         **table,
         "log": _guarded(_log),
         "sinh": _sinh,
         "abs": abs,
-        "min": min,
-        "max": max,
+        "min": lambda a, b: math.nan if math.isnan(a) or math.isnan(b) else min(a, b),
+        "max": lambda a, b: math.nan if math.isnan(a) or math.isnan(b) else max(a, b),
         "sign": lambda x: math.nan if math.isnan(x) else float((x > 0) - (x < 0)),
         "step_le": lambda a, b: 1.0 if a <= b else 0.0,
         "cardinal": _guarded(cardinal),

@@ -1,24 +1,27 @@
-"""Typed formula to expression tree: one grammar, four places where it stands, each with its own extras.
+"""Typed formula to expression tree: one grammar, five places where it stands, each with its own extras.
 
-A construct in the wrong place is an error that names the right one. Depth, length and powers are bounded. Nothing is
-ever evaluated: the result is a tree of eight kinds of nodes.
+A construct in the wrong place is an error that names the right one. Depth, length and powers are bounded. Nothing
+typed ever runs: the result is a tree of nine kinds of nodes.
 """
 
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
 from fractions import Fraction
 
 from bvp.errors import FormulaError, nearest
-from bvp.formula.tree import At, Binary, Call, Indexed, Name, Negative, Node, Number, Prime, Relation
-from bvp.formula.vocabulary import MEASURES, ONE_ARGUMENT, OPERATORS, TWO_ARGUMENTS, Vocabulary
-from bvp.formula.words import Word, words
+from bvp.formula import advice
+from bvp.formula.evaluate import evaluate, float_functions
+from bvp.formula.places import check_location, check_places
+from bvp.formula.reader import DEEPEST, Reader
+from bvp.formula.tree import At, Binary, Call, Indexed, Name, Negative, Node, Number, Prime, Relation, walk
+from bvp.formula.vocabulary import CONSTANTS, MEASURES, ONE_ARGUMENT, OPERATORS, TWO_ARGUMENTS, Vocabulary
+from bvp.formula.words import Word
 
-DEEPEST = 60  # brackets within brackets; also what keeps the parser within Python's own stack
 LARGEST_POWER = 64
+MOST_PRIMES = 8
 PLACES = ("equation", "condition", "measure", "scheme", "plain")
-STAND_INS = ("u", "x", "f", "h", "step")  # what a scheme may say for any unknown, any coordinate, the part without derivatives, the step
+STAND_INS = ("u", "x", "f")  # what a scheme may say for any unknown, any coordinate, the part without derivatives; each at a node
 OFFSETS = (Fraction(-1), Fraction(0), Fraction(1))
 HALVES = (Fraction(-1, 2), Fraction(1, 2))
 
@@ -35,34 +38,8 @@ def parse(text: str, place: str, vocabulary: Vocabulary, origin: str = "") -> No
     return _Parser(text, place, vocabulary, origin).whole()
 
 
-class _Parser:
-    """One formula being read: its words and how far reading has come."""
-
-    def __init__(self, text: str, place: str, vocabulary: Vocabulary, origin: str) -> None:
-        self.text, self.place, self.origin = text, place, origin
-        self.vocabulary = vocabulary
-        self.words = words(text, origin)
-        self.position = 0
-        self.depth = 0
-        self.inside_call = 0
-
-    # -- moving along -----------------------------------------------------------------------------------------------
-
-    @property
-    def word(self) -> Word:
-        return self.words[self.position]
-
-    def take(self) -> Word:
-        word = self.words[self.position]
-        self.position += word.kind != "end"
-        return word
-
-    def at_sign(self, *signs: str) -> bool:
-        return self.word.kind == "sign" and self.word.text in signs
-
-    def error(self, word: Word | int, expected: str, advice: str = "") -> FormulaError:
-        column = word if isinstance(word, int) else word.column
-        return FormulaError(self.origin, self.text, column, expected, advice)
+class _Parser(Reader):
+    """One formula being read by the grammar."""
 
     # -- the grammar, from the loosest binding to the tightest -------------------------------------------------------
 
@@ -77,47 +54,32 @@ class _Parser:
             if self.at_sign("=", "<", ">", "<=", ">="):
                 raise self.error(self.word, f'a second "{self.word.text}".', "Expected: one, between two sides.")
         if self.word.kind != "end":
-            raise self.unexpected(self.word)
+            raise self.error(self.word, *advice.of_word_too_many(self.word))
+        if self.place in ("condition", "measure"):
+            check_places(tree, self)
         return tree
 
     def check_relation(self, sign: Word) -> None:
         if self.place == "plain":
             raise self.error(sign, f'"{sign.text}" where a value is asked for.', "Expected: a formula without it.")
         if sign.text != "=" and self.place != "measure":
-            raise self.error(sign, f'a comparison "{sign.text}" stands only in a measure, such as until = "max(u) > 20".', 'Write "=".')
-
-    def unexpected(self, word: Word) -> FormulaError:
-        if word.kind in ("number", "name") or (word.kind == "sign" and word.text == "("):
-            return self.error(word, "two factors side by side.", 'Write the product with "*", such as 2*u or lam*exp(u).')
-        if word.kind == "prime":
-            return self.error(word, "a prime that belongs to nothing.", "A prime follows a name, a call or a closing bracket: u', (k*u')'.")
-        if word.kind == "sign" and word.text in ")]":
-            return self.error(word, f'a "{word.text}" that was never opened.', "Take it away, or open it.")
-        if word.kind == "sign" and word.text == "[":
-            return self.error(word, "square brackets that belong to no name.", "They hold an index in a scheme: u[k+1].")
-        if word.kind == "end":
-            return self.error(word, "the formula ends too early.", "Expected: a number, a name or a bracket.")
-        return self.error(word, f'"{word.text}" at a place where it means nothing.', "Expected: a number, a name or a bracket.")
+            message = f'a comparison "{sign.text}" stands only in a measure, such as until = "max(u) > 20".'
+            raise self.error(sign, message, 'Write "=".')
 
     def sum(self) -> Node:
         self.deeper()
         tree = self.product()
         while self.at_sign("+", "-"):
             sign = self.take()
-            tree = Binary(sign.text, tree, self.product(), sign.column)
+            tree = self.bounded(Binary(sign.text, tree, self.product(), sign.column))
         self.depth -= 1
         return tree
-
-    def deeper(self) -> None:
-        self.depth += 1
-        if self.depth > DEEPEST:
-            raise self.error(self.word, f"more than {DEEPEST} brackets within brackets; that is the bound.", "Name parts of the formula under [where].")
 
     def product(self) -> Node:
         tree = self.signed()
         while self.at_sign("*", "/"):
             sign = self.take()
-            tree = Binary(sign.text, tree, self.signed(), sign.column)
+            tree = self.bounded(Binary(sign.text, tree, self.signed(), sign.column))
         return tree
 
     def signed(self) -> Node:
@@ -127,10 +89,10 @@ class _Parser:
             if sign.text == "-":
                 minus.append(sign)
             if len(minus) > DEEPEST:
-                raise self.error(sign, f"more than {DEEPEST} signs in a row; that is the bound.")
+                raise self.error(sign, f"more than {DEEPEST} signs in a row; that is the bound.", "Write one.")
         tree = self.power()
         for sign in reversed(minus):
-            tree = Negative(tree, sign.column)
+            tree = self.bounded(Negative(tree, sign.column))
         return tree
 
     def power(self) -> Node:
@@ -143,36 +105,41 @@ class _Parser:
         self.depth -= 1
         value = _constant(exponent)
         if value is not None and not abs(value) <= LARGEST_POWER:
-            raise self.error(sign.column, f"the power {value:g} is beyond {LARGEST_POWER}, the bound.", "Write exp(…) or a parameter for steep functions.")
-        return Binary("^", base, exponent, sign.column)
+            message = f"the power {value:g} is beyond {LARGEST_POWER}, the bound."
+            raise self.error(sign, message, "Write exp(…) or a parameter for steep functions.")
+        return self.bounded(Binary("^", base, exponent, sign.column))
 
     def primed(self) -> Node:
         tree, may_prime = self.atom()
-        first = self.word
-        order = 0
-        while self.word.kind == "prime":
-            self.take()
-            order += 1
+        first, order = self.word, self.primes()
+        if order and isinstance(tree, Name) and tree.name in (*self.vocabulary.measured, *self.vocabulary.functions):
+            tree = self.called(tree, order)
+            first, order = self.word, self.primes()
         if order == 0:
             return self.located(tree)
-        if not may_prime:
+        if not may_prime or isinstance(tree, Number):
             raise self.error(first, "a prime on a number.", "A prime follows a name, a call or a closing bracket.")
         return self.differentiated(tree, order, first)
 
+    def primes(self) -> int:
+        first, order = self.word, 0
+        while self.word.kind == "prime":
+            self.take()
+            order += 1
+        if order > MOST_PRIMES:
+            raise self.error(first, f"{order} primes; the bound is {MOST_PRIMES}.", "Split the equation into several of lower order.")
+        return order
+
     def differentiated(self, tree: Node, order: int, first: Word) -> Node:
         vocabulary = self.vocabulary
-        if isinstance(tree, Name) and tree.name in (*vocabulary.measured, *vocabulary.functions):
-            return self.called(tree, order)
-        if self.place in ("scheme", "plain") and not isinstance(tree, Call):
-            right = "a scheme writes differences, such as (u[k+1] - u[k])/h" if self.place == "scheme" else "derivatives belong in equations and conditions"
-            raise self.error(first, f"a derivative; {right}.")
-        if self.place in ("condition", "measure"):
-            if not (isinstance(tree, Name) and tree.name in vocabulary.unknowns):
-                raise self.error(first, f"a prime in a {self.place} follows an unknown, such as u'(1).", "Write the derivative of the unknown there.")
-            if order > 1 and self.place == "condition" and order > 3:
-                raise self.error(first, f"a derivative of order {order} in a condition.", "Expected: an order below that of the equation.")
-        if isinstance(tree, Name) and tree.name in vocabulary.parameters:
-            raise self.error(first, f"{tree.name} is a parameter; its derivative along {vocabulary.coordinate} is 0.", "Take the prime away.")
+        if self.place in ("scheme", "plain"):
+            raise self.error(first, *advice.of_derivative(self.place))
+        if self.place in ("condition", "measure") and not (isinstance(tree, Name) and tree.name in vocabulary.unknowns):
+            message = f"a prime in a {self.place} follows an unknown, such as u'(1)."
+            raise self.error(first, message, "Write the derivative of the unknown there.")
+        if isinstance(tree, Name) and tree.name in (*vocabulary.parameters, *vocabulary.numbers):
+            message = f"{tree.name} is a number; its derivative along {vocabulary.coordinate} is 0."
+            raise self.error(first, message, "Take the prime away.")
         return self.located(Prime(tree, order, first.column))
 
     def located(self, tree: Node) -> Node:
@@ -190,14 +157,11 @@ class _Parser:
             )
         location = self.sum()
         self.close(opening, ")")
-        return At(tree, location, tree.place)
-
-    def close(self, opening: Word, sign: str) -> None:
-        if not self.at_sign(sign):
-            if self.word.kind == "end":
-                raise self.error(opening, f'the bracket opened at column {opening.column + 1} is never closed.', f'Add "{sign}".')
-            raise self.unexpected(self.word)
-        self.take()
+        check_location(location, shown, self)
+        if self.word.kind == "prime":
+            message = f"a prime behind a place; {shown} at a place is a number."
+            raise self.error(self.word, message, f"Write {inside.name}'(…) for the derivative there.")
+        return At(tree, location, inside.place)
 
     def atom(self) -> tuple[Node, bool]:
         word = self.take()
@@ -209,13 +173,13 @@ class _Parser:
             return tree, True
         if word.kind == "name":
             return self.named(word), True
-        raise self.unexpected(word)
+        raise self.error(word, *advice.of_missing_operand(word))
 
     # -- names ------------------------------------------------------------------------------------------------------
 
     def named(self, word: Word) -> Node:
         name, vocabulary = word.text, self.vocabulary
-        if name == "pi":
+        if name in CONSTANTS:
             return Number(math.pi, word.column)
         if self.at_sign("["):
             return self.indexed(word)
@@ -226,64 +190,41 @@ class _Parser:
             if self.word.kind == "prime":
                 return tree
             return self.called(tree, 0)
-        known = self.known_names()
+        fixed = [*vocabulary.parameters, *vocabulary.where, *vocabulary.numbers]
+        nodal = [vocabulary.coordinate, *vocabulary.unknowns]
+        if self.place == "scheme" and name not in fixed and name in (*nodal, *STAND_INS):
+            message = f"A scheme holds values at nodes: {name}[k-1], {name}[k], {name}[k+1]."
+            raise self.error(word, f"{name} without its node.", message)
+        known = [*nodal, *fixed, *(("h", "step") if self.place == "scheme" else ())]
         if name not in known:
-            advice = nearest(name, known)
-            if name in ("e", "E"):
-                advice = "For the base of the natural logarithm write exp(1). " + advice
-            elif name == "k" and self.place == "scheme":
-                advice = "k is the index inside square brackets only. " + advice
-            raise self.error(word, f'"{name}" is not known.', advice)
+            known += [*vocabulary.measured, *vocabulary.functions]
+            raise self.error(word, *advice.of_unknown_name(name, self.place, known, self.at_sign("(")))
+        if name in vocabulary.where and self.at_sign("("):
+            message = f"{name} is a formula under [where], not a function."
+            raise self.error(self.word, message, f'Write {name} by itself; for a product write "*".')
         return Name(name, word.column)
-
-    def known_names(self) -> list[str]:
-        vocabulary = self.vocabulary
-        known = [*vocabulary.unknowns, vocabulary.coordinate, *vocabulary.parameters, *vocabulary.where, *vocabulary.numbers]
-        if self.place == "scheme":
-            known += [name for name in ("h", "step") if name not in known]
-            known += [name for name in ("u", "x", "f") if name not in known]
-        return known
 
     def indexed(self, word: Word) -> Node:
         opening = self.take()
         if self.place != "scheme":
-            raise self.error(opening, "an index in square brackets; those belong in schemes, under [scheme].", f"Here write {word.text} for the function itself.")
+            message = "an index in square brackets; those belong in schemes, under [scheme]."
+            raise self.error(opening, message, f"Here write {word.text} for the function itself.")
         vocabulary = self.vocabulary
-        known = [*dict.fromkeys([*vocabulary.unknowns, vocabulary.coordinate, "u", "x", "f"])]
+        known = [*dict.fromkeys([*vocabulary.unknowns, vocabulary.coordinate, *STAND_INS])]
         if word.text not in known:
             raise self.error(word, f'"{word.text}" has no nodal values.', nearest(word.text, known))
         offset = self.offset()
         self.close(opening, "]")
         half = offset.denominator == 2
-        is_coordinate = word.text == vocabulary.coordinate or (word.text == "x" and "x" not in (*vocabulary.unknowns, *vocabulary.parameters))
+        is_coordinate = word.text == vocabulary.coordinate or (
+            word.text == "x" and "x" not in (*vocabulary.unknowns, *vocabulary.parameters)
+        )
         if half and not is_coordinate:
-            raise self.error(word, f"{word.text} has no value half way between nodes.", f"Only the coordinate has: {vocabulary.coordinate}[k+1/2]. Write ({word.text}[k] + {word.text}[k+1])/2.")
+            instead = f"Only the coordinate has: {vocabulary.coordinate}[k+1/2]. Write ({word.text}[k] + {word.text}[k+1])/2."
+            raise self.error(word, f"{word.text} has no value half way between nodes.", instead)
         if offset not in (OFFSETS + HALVES):
             raise self.error(word, f"the node k{'+' * (offset > 0)}{offset} is out of reach.", "A scheme has the nodes k-1, k and k+1.")
         return Indexed(word.text, offset, word.column)
-
-    def offset(self) -> Fraction:
-        """k, k+1, k-1/2: what stands between square brackets."""
-        word = self.take()
-        if word.kind != "name" or word.text != "k":
-            raise self.error(word, "an index that does not begin with k.", "Expected: k-1, k, k+1, and k-1/2, k+1/2 for the coordinate.")
-        if not self.at_sign("+", "-"):
-            return Fraction(0)
-        sign = -1 if self.take().text == "-" else 1
-        above = self.whole_number()
-        if self.at_sign("/"):
-            self.take()
-            below = self.whole_number()
-            if below != 2:
-                raise self.error(self.words[self.position - 1], f"a fraction of {below} in an index.", "Expected: halves, as in k+1/2.")
-            return sign * Fraction(above, below)
-        return Fraction(sign * above)
-
-    def whole_number(self) -> int:
-        word = self.take()
-        if word.kind != "number" or not word.text.isdigit():
-            raise self.error(word, "an index that is no whole number.", "Expected: k-1, k, k+1, and k-1/2, k+1/2 for the coordinate.")
-        return int(word.text)
 
     # -- functions --------------------------------------------------------------------------------------------------
 
@@ -301,18 +242,18 @@ class _Parser:
     def function(self, word: Word) -> Node:
         name = word.text
         if name in OPERATORS and self.place != "equation":
-            raise self.error(word, f"{name} belongs in equations.", "Here write differences of nodal values." if self.place == "scheme" else "")
-        is_measure = name in MEASURES
-        if name in ("mean", "rms") and self.place != "measure":
-            raise self.error(word, f"{name}(…) is a measure; measures stand under [trace] and in --when.", "In an equation only pointwise formulas stand.")
-        if name == "integral" and self.place not in ("measure", "condition"):
-            raise self.error(word, "integral(…) belongs in conditions and measures.", "In an equation only pointwise formulas stand.")
+            raise self.error(word, *advice.of_operator(name, self.place))
+        can_measure = self.place == "measure" or (self.place == "condition" and name == "integral")
+        if name in ("mean", "rms", "integral") and not can_measure:
+            raise self.error(word, *advice.of_measure(name, self.place))
         inside = self.arguments(word)
-        if name in ("max", "min") and len(inside) == 1 and self.place != "measure":
-            raise self.error(word, f"{name} of one argument is a measure; measures stand under [trace] and in --when.", f"For the {'larger' if name == 'max' else 'smaller'} of two write {name}(a, b).")
-        expected = (1, 2) if name in ("max", "min") and is_measure and self.place == "measure" else (2,) if name in TWO_ARGUMENTS else (1,)
+        if name in ("max", "min") and len(inside) == 1 and not can_measure:
+            raise self.error(word, *advice.of_measure(name, self.place))
+        expected = (1,) if name not in TWO_ARGUMENTS else (1, 2) if can_measure else (2,)
         if len(inside) not in expected:
-            raise self.error(word, f"{name} takes {expected[0]} argument{'s' * (expected[0] > 1)}, not {len(inside)}.")
+            wanted = f"{' or '.join(map(str, expected))} argument{'s' * (expected[-1] > 1)}"
+            instead = f"Write {name}({'a, b' if name in TWO_ARGUMENTS else '…'})."
+            raise self.error(word, f"{name} takes {wanted}, not {len(inside)}.", instead)
         return Call(name, tuple(inside), (), word.column)
 
     def called(self, tree: Name, order: int) -> Node:
@@ -322,7 +263,8 @@ class _Parser:
         inside = self.arguments(word)
         expected = self.vocabulary.functions.get(tree.name, 1)
         if len(inside) != expected:
-            raise self.error(word, f"{tree.name} takes {expected} argument{'s' * (expected > 1)}, not {len(inside)}.")
+            instead = f"Write {tree.name}({', '.join(['…'] * expected)})."
+            raise self.error(word, f"{tree.name} takes {expected} argument{'s' * (expected > 1)}, not {len(inside)}.", instead)
         if order and expected != 1:
             raise self.error(word, f"a prime on {tree.name}, a function of {expected} arguments.", "Give its derivatives beside it.")
         return Call(tree.name, tuple(inside), (order,) if order else (), tree.place)
@@ -330,22 +272,6 @@ class _Parser:
 
 def _constant(tree: Node) -> float | None:
     """The value of a formula of numbers alone, None where it holds a name; not finite where it overflows."""
-    if isinstance(tree, Number):
-        return tree.value
-    if isinstance(tree, Negative):
-        inside = _constant(tree.operand)
-        return None if inside is None else -inside
-    if isinstance(tree, Binary):
-        left, right = _constant(tree.left), _constant(tree.right)
-        if left is None or right is None:
-            return None
-        try:
-            return {"+": lambda: left + right, "-": lambda: left - right, "*": lambda: left * right, "/": lambda: left / right, "^": lambda: float(left**right)}[tree.operator]()
-        except (ZeroDivisionError, OverflowError, TypeError):
-            return math.inf
+    if all(isinstance(node, Number) for node in walk(tree) if not node.parts):
+        return float(evaluate(tree, lambda leaf: math.nan, float_functions()))
     return None
-
-
-def parse_all(texts: Sequence[str], place: str, vocabulary: Vocabulary, origin: str = "") -> list[Node]:
-    """Several formulas, numbered from 1 in their messages."""
-    return [parse(text, place, vocabulary, f"{origin}, {number}" if origin else str(number)) for number, text in enumerate(texts, start=1)]

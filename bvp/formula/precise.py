@@ -33,6 +33,13 @@ def mpmath_functions() -> dict[str, Callable[..., Any]]:
     }
 
 
+def typed(value: float) -> Any:
+    """A literal as it was typed: 0.1 is one tenth, and pi has all its digits."""
+    import mpmath
+
+    return +mpmath.pi if value == math.pi else mpmath.mpf(repr(value))
+
+
 def cardinal(z: Any) -> Any:
     """4 sin^2(sqrt(z)/2)/z."""
     import mpmath

@@ -60,7 +60,7 @@ class Series:
     @cached_property
     def is_constant(self) -> bool:
         """Whether nothing but a term s^0 is there, as far as it is known."""
-        return self.valuation == 0 and not any(self.coefficients[1:]) or not self.coefficients
+        return (self.valuation == 0 and not any(self.coefficients[1:])) or not self.coefficients
 
     def __repr__(self) -> str:
         shown = [f"{c} s^{self.valuation + i}" for i, c in enumerate(self.coefficients) if c != 0]
@@ -85,10 +85,10 @@ class Series:
     __radd__ = __add__
 
     def __sub__(self, other: Any) -> Series:
-        return self + -other
+        return self.__add__(-other)
 
     def __rsub__(self, other: Any) -> Series:
-        return -self + other
+        return (-self).__add__(other)
 
     def __mul__(self, other: Any) -> Series:
         if not isinstance(other, Series):
@@ -127,14 +127,14 @@ class Series:
 
     def __rpow__(self, base: Any) -> Series:
         if self.is_constant:
-            return Series.constant(base, len(self.coefficients)) ** self.coefficient(0)
+            return Series.constant(base, len(self.coefficients)).__pow__(self.coefficient(0))
         if not base > 0:
             raise SeriesError(f"{base} to a power that changes; the base has to be positive")
-        return exponential(self * _value("log", base))
+        return exponential(self * _value("log", base * unit(self.coefficients)))
 
     def _whole_power(self, exponent: int) -> Series:
         if exponent < 0:
-            return 1.0 / self._whole_power(-exponent)
+            return self._whole_power(-exponent).__rtruediv__(1.0)
         result = Series.constant(1.0, len(self.coefficients))
         square = self
         while exponent:
@@ -151,7 +151,7 @@ class Series:
             raise SeriesError(f"the power {exponent} of what vanishes below s^{self.end}")
         if shift != int(shift):
             raise SeriesError(f"the power {exponent} of what begins with s^{self.valuation}; that is no series in whole powers")
-        leading = self.coefficients[0]
+        leading = self.coefficients[0] * unit(self.coefficients)
         if not leading > 0:
             raise SeriesError(f"the power {exponent} of what is negative, {leading}, where s is small")
         t = [c / leading for c in self.coefficients]
@@ -164,12 +164,16 @@ class Series:
         return self.coefficients[power - self.valuation] if power >= self.valuation else 0.0
 
     def from_zero(self, what: str) -> list[Any]:
-        """The coefficients from the power 0 on; SeriesError where negative powers are there, or not even s^0 is known."""
+        """The coefficients from the power 0 on, all in one arithmetic.
+
+        SeriesError where negative powers are there, or not even s^0 is known.
+        """
         if self.coefficients and self.valuation < 0:
             raise SeriesError(f"{what} of what grows like s^{self.valuation}")
         if self.end <= 0:
             raise SeriesError(f"{what} of what is known below s^{self.end} only")
-        return [self._at(power) for power in range(self.end)]
+        one = unit(self.coefficients)
+        return [self._at(power) * one for power in range(self.end)]
 
     def sign(self) -> float:
         """The sign for small positive s; 0 where every known coefficient is 0."""
@@ -180,10 +184,16 @@ def _summed(summands: Sequence[Any]) -> Any:
     """The sum, 0 where it is no more than the rounding of its summands."""
     total = sum(summands)
     size = sum(abs(c) for c in summands)
-    return 0.0 if abs(total) <= ROUNDING * _unit(total) * size else total
+    return 0.0 if abs(total) <= ROUNDING * unit_roundoff(total) * size else total
 
 
-def _unit(number: Any) -> Any:
+def unit(coefficients: Sequence[Any]) -> Any:
+    """1 in the arithmetic of some coefficients: that of the first which is no float."""
+    precise = next((c for c in coefficients if not isinstance(c, (int, float))), None)
+    return 1.0 if precise is None else precise.context.mpf(1)
+
+
+def unit_roundoff(number: Any) -> Any:
     """The unit roundoff of a number's arithmetic."""
     if isinstance(number, (int, float)):
         return 2.220446049250313e-16
@@ -249,7 +259,7 @@ def _by_slope(name: str, x: Series, slope: Callable[[Series], Any]) -> Series:
     return _integrated(slope(x) * differentiated(Series(c)), first, len(c))
 
 
-def _pair(names: tuple[str, str], x: Series, sign: float) -> tuple[Series, Series]:
+def sine_and_cosine(names: tuple[str, str], x: Series, sign: float) -> tuple[Series, Series]:
     """(sin, cos) for sign -1, (sinh, cosh) for sign 1: a' = x' b, b' = sign x' a."""
     c = x.from_zero(names[0])
     a, b = [_value(names[0], c[0])], [_value(names[1], c[0])]
@@ -300,10 +310,10 @@ def series_functions() -> dict[str, Callable[..., Any]]:
         "expm1": _expm1,
         "log1p": lambda x: _by_slope("log1p", x, lambda t: 1.0 / (1.0 + t)),
         "sqrt": lambda x: x**0.5,
-        "sin": lambda x: _pair(("sin", "cos"), x, -1.0)[0],
-        "cos": lambda x: _pair(("sin", "cos"), x, -1.0)[1],
-        "sinh": lambda x: _pair(("sinh", "cosh"), x, 1.0)[0],
-        "cosh": lambda x: _pair(("sinh", "cosh"), x, 1.0)[1],
+        "sin": lambda x: sine_and_cosine(("sin", "cos"), x, -1.0)[0],
+        "cos": lambda x: sine_and_cosine(("sin", "cos"), x, -1.0)[1],
+        "sinh": lambda x: sine_and_cosine(("sinh", "cosh"), x, 1.0)[0],
+        "cosh": lambda x: sine_and_cosine(("sinh", "cosh"), x, 1.0)[1],
         "tan": lambda x: _tangent("tan", x, 1.0),
         "tanh": lambda x: _tangent("tanh", x, -1.0),
         "asin": lambda x: _by_slope("asin", x, lambda t: (1.0 - t * t) ** -0.5),

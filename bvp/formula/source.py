@@ -7,7 +7,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
 
-from bvp.formula.tree import Binary, Call, Negative, Node, Number
+from bvp.formula.tree import Binary, Call, Negative, Node, Number, bottom_up, number_of
 
 LARGEST_PRODUCT = 16  # whole powers up to here become products; beyond, pow is as good
 
@@ -30,30 +30,28 @@ def source(trees: Sequence[Node], spell: Callable[[Node], str], functions: Mappi
         squared = assign(f"{half} * {half}")
         return squared if exponent % 2 == 0 else assign(f"{squared} * {base}")
 
-    def of(node: Node) -> str:
+    def made(node: Node) -> str:
         if isinstance(node, Number):
             return repr(node.value) if node.value >= 0 else f"({node.value!r})"
-        if node not in done:
-            done[node] = made(node)
-        return done[node]
-
-    def made(node: Node) -> str:
         if isinstance(node, Negative):
-            return assign(f"-{of(node.operand)}")
+            value = number_of(node)
+            return assign(f"-{done[node.operand]}") if value is None else f"({value!r})"
         if isinstance(node, Binary):
+            left, right = done[node.left], done[node.right]
             if node.operator != "^":
-                return assign(f"{of(node.left)} {node.operator} {of(node.right)}")
-            base, exponent = of(node.left), node.right
-            if isinstance(exponent, Number) and exponent.value == int(exponent.value) and 1 <= abs(exponent.value) <= LARGEST_PRODUCT:
-                whole = power(base, int(abs(exponent.value)))
-                return whole if exponent.value > 0 else assign(f"1.0 / {whole}")
-            return assign(f"{base} ** {of(exponent)}")
+                return assign(f"{left} {node.operator} {right}")
+            exponent = number_of(node.right)
+            if exponent is not None and 1 <= abs(exponent) <= LARGEST_PRODUCT and exponent == int(exponent):
+                whole = power(left, int(abs(exponent)))
+                return whole if exponent > 0 else assign(f"1.0 / {whole}")
+            return assign(f"{left} ** {right}")
         if isinstance(node, Call):
-            inside = ", ".join(of(part) for part in node.arguments)
+            inside = ", ".join(done[part] for part in node.arguments)
             key = node.function if not any(node.orders) else f"{node.function}:{','.join(map(str, node.orders))}"
             spelled = functions[key]
             return assign(spelled.format(inside) if "{}" in spelled else f"{spelled}({inside})")
         return spell(node)
 
-    results = [of(tree) for tree in trees]
-    return lines, results
+    for node in bottom_up(trees, lambda node: isinstance(node, (Binary, Negative, Call))):
+        done[node] = made(node)
+    return lines, [done[tree] for tree in trees]

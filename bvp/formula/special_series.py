@@ -6,7 +6,7 @@ import math
 from collections.abc import Callable, Sequence
 from typing import Any
 
-from bvp.formula.series import Series, SeriesError, _pair, _unit, exponential
+from bvp.formula.series import Series, SeriesError, exponential, sine_and_cosine, unit, unit_roundoff
 
 NEAR = 4.0  # |z| up to which the power series around 0 is summed: it loses one digit there
 LARGEST = 100.0  # of |p^2| and |p^2 - z| where the weights' power series is summed; a fine grid has them near 0
@@ -26,8 +26,9 @@ def _entire(name: str, z: Series, order: int) -> Series:
     c = z.from_zero(name)
     start = c[0]
     if abs(start) > NEAR:
-        return _half_angle(z) if order == 0 else (_sine_over_argument(z) - _half_angle(z)) / z
-    one = _one(c)
+        closed = _half_angle(z)
+        return closed if order == 0 else (_sine_over_argument(z) - closed) / z
+    one = unit(c)
     near = [_taylor(one, start, n, order) for n in range(len(c))]
     return _composed(near, z - start)
 
@@ -40,14 +41,14 @@ def _taylor(one: Any, start: Any, n: int, order: int) -> Any:
         power = m + order
         term = (-1) ** power * 2 * one * whole / math.factorial(2 * power + 2) * start ** (m - n)
         total, size = total + term, max(size, abs(term))
-        if abs(term) <= _unit(one) * size * 1e-3:
+        if abs(term) <= unit_roundoff(one) * size * 1e-3:
             break
     return total
 
 
 def _composed(coefficients: Sequence[Any], t: Series) -> Series:
     """sum coefficients[n] t^n for a t that vanishes where s does."""
-    total: Any = Series.constant(coefficients[-1], len(coefficients))
+    total = Series.constant(coefficients[-1], len(coefficients))
     for coefficient in reversed(coefficients[:-1]):
         total = total * t + coefficient
     return total
@@ -61,31 +62,34 @@ def _root(z: Series) -> tuple[Series, float]:
 
 def _half_angle(z: Series) -> Series:
     root, sign = _root(z)
-    half = _pair(("sin", "cos"), root / 2, -1.0)[0] if sign > 0 else _pair(("sinh", "cosh"), root / 2, 1.0)[0]
+    half = sine_and_cosine(("sin", "cos"), root / 2, -1.0)[0] if sign > 0 else sine_and_cosine(("sinh", "cosh"), root / 2, 1.0)[0]
     return half * half * 4 / (z * sign)
 
 
 def _sine_over_argument(z: Series) -> Series:
     root, sign = _root(z)
-    return (_pair(("sin", "cos"), root, -1.0)[0] if sign > 0 else _pair(("sinh", "cosh"), root, 1.0)[0]) / root
+    return (sine_and_cosine(("sin", "cos"), root, -1.0)[0] if sign > 0 else sine_and_cosine(("sinh", "cosh"), root, 1.0)[0]) / root
 
 
 def fit(p: Any, z: Any) -> Series:
     """e^p z/(2 (cosh p - cosh sqrt(p^2 - z)))."""
     grown, sums = _sums(p, z)
-    return grown / sums[0]
+    weight: Series = grown / sums[0]
+    return weight
 
 
 def fit_by_drift(p: Any, z: Any) -> Series:
     """The derivative of fit by p."""
     grown, (total, _, along) = _sums(p, z)
-    return grown / total - grown * along * p * 2 / (total * total)
+    slope: Series = grown / total - grown * along * p * 2 / (total * total)
+    return slope
 
 
 def fit_by_slope(p: Any, z: Any) -> Series:
     """The derivative of fit by z."""
     grown, (total, by_second, _) = _sums(p, z)
-    return grown * by_second / (total * total)
+    slope: Series = grown * by_second / (total * total)
+    return slope
 
 
 def _sums(p: Any, z: Any) -> tuple[Series, tuple[Any, Any, Any]]:
@@ -102,12 +106,12 @@ def _sums(p: Any, z: Any) -> tuple[Series, tuple[Any, Any, Any]]:
         raise SeriesError(f"the fitted weights at a step where p^2 = {a._at(0)} and p^2 - z = {b._at(0)} are far from 0")
     if b.coefficients and b._at(0) <= -(math.pi**2):
         raise SeriesError("the fitted weights have no meaning where z - p^2 reaches pi^2")
-    one = _one(c)
+    one = unit(c)
     whole = Series.constant(one, min(a.end, b.end, grown.end))
-    return grown, divided_differences(a, b, whole, _size, _unit(one))
+    return grown, divided_differences(a, b, whole, _size, unit_roundoff(one))
 
 
-def divided_differences(a: Any, b: Any, one: Any, size: Callable[[Any], Any], unit: Any) -> tuple[Any, Any, Any]:
+def divided_differences(a: Any, b: Any, one: Any, size: Callable[[Any], Any], roundoff: Any) -> tuple[Any, Any, Any]:
     """2 E[a, b] of E(w) = cosh sqrt w, its derivative by b, and that by a and b together, in any arithmetic.
 
     The m-th power gives the sum of all a^i b^(m - 1 - i); that and its derivatives follow from those of the power before.
@@ -118,7 +122,7 @@ def divided_differences(a: Any, b: Any, one: Any, size: Callable[[Any], Any], un
         weight = math.factorial(2 * m)
         parts = [2 * part / weight for part in (s, by_b, along)]
         totals = [total + part for total, part in zip(totals, parts, strict=True)]
-        if m > 2 and all(size(part) <= unit * 1e-3 * size(total) for part, total in zip(parts, totals, strict=True)):
+        if m > 2 and all(size(part) <= roundoff * 1e-3 * size(total) for part, total in zip(parts, totals, strict=True)):
             break
         s, by_b, along = a * s + power * b, a * by_b + power * m, s + a * along + power * m
         power = power * b
@@ -127,9 +131,3 @@ def divided_differences(a: Any, b: Any, one: Any, size: Callable[[Any], Any], un
 
 def _size(series: Series) -> Any:
     return max((abs(c) for c in series.coefficients), default=0.0)
-
-
-def _one(coefficients: Sequence[Any]) -> Any:
-    """1 in the arithmetic of the coefficients."""
-    precise = next((c for c in coefficients if not isinstance(c, (int, float))), None)
-    return 1.0 if precise is None else precise.context.mpf(1)

@@ -1,4 +1,4 @@
-"""The expression tree that a typed formula becomes: eight kinds of frozen nodes, and ways to walk them.
+"""The expression tree that a typed formula becomes: nine kinds of frozen nodes, and ways to walk them.
 
 A tree knows no numbers but its literals and no grid. Equality ignores where in the text a node stood, so
 trees serve as dictionary keys (for common subexpressions, for `replace` in a scheme).
@@ -6,16 +6,34 @@ trees serve as dictionary keys (for common subexpressions, for `replace` in a sc
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator
-from dataclasses import dataclass, field
+import operator
+from collections.abc import Callable, Iterator, Sequence
+from dataclasses import dataclass, field, fields
 from fractions import Fraction
-from functools import cached_property
 
 
 class Node:
-    """What all kinds of nodes share; `place` is the column in the typed text, -1 for a node made by the tool."""
+    """What all kinds of nodes share.
+
+    place : the column in the typed text, -1 for a node made by the tool. key : the hash. size : the nodes of the tree,
+    each counted as often as it stands there. height : the nodes on the longest way down to a leaf.
+    """
 
     place: int
+    key: int
+    size: int
+    height: int
+
+    def __post_init__(self) -> None:
+        # Made from those of the parts at once: worked out on demand they would need a stack as deep as the tree.
+        put = object.__setattr__
+        put(self, "key", hash((type(self).__name__, *self._identity())))
+        put(self, "size", 1 + sum(part.size for part in self.parts))
+        put(self, "height", 1 + max((part.height for part in self.parts), default=0))
+
+    def __reduce__(self) -> tuple[object, tuple[object, ...]]:
+        """A copy in another process is built anew: there text has other hashes."""
+        return type(self), tuple(getattr(self, one.name) for one in fields(self))  # type: ignore[arg-type]
 
     @property
     def parts(self) -> tuple[Node, ...]:
@@ -29,19 +47,15 @@ class Node:
     def __hash__(self) -> int:
         return self.key
 
-    @cached_property
-    def key(self) -> int:
-        return hash((type(self).__name__, *self._identity()))
-
     def _identity(self) -> tuple[object, ...]:
         raise AssertionError("each kind of node says what it is known by")
 
     def __eq__(self, other: object) -> bool:
         if self is other:
             return True
-        if type(self) is not type(other) or self.key != other.key:  # type: ignore[attr-defined]
+        if not isinstance(other, Node) or type(self) is not type(other) or self.key != other.key:
             return False
-        return self._identity() == other._identity()  # type: ignore[attr-defined]
+        return self._identity() == other._identity()
 
 
 @dataclass(frozen=True, eq=False)
@@ -195,25 +209,60 @@ class Relation(Node):
 
 
 def walk(tree: Node) -> Iterator[Node]:
-    """Every node of a tree, the whole before its parts."""
-    waiting = [tree]
+    """Every node of a tree, the whole before its parts; one that several others share comes once."""
+    waiting, met = [tree], {id(tree)}
     while waiting:
         node = waiting.pop()
         yield node
-        waiting.extend(reversed(node.parts))
+        for part in reversed(node.parts):
+            if id(part) not in met:
+                met.add(id(part))
+                waiting.append(part)
+
+
+def bottom_up(trees: Sequence[Node], opened: Callable[[Node], bool]) -> Iterator[Node]:
+    """Every different node of some trees once, parts before the whole; the parts of a node that is not opened do not count."""
+    done: set[Node] = set()
+    waiting = [(tree, False) for tree in reversed(trees)]
+    while waiting:
+        node, parts_done = waiting.pop()
+        if node in done:
+            continue
+        if parts_done or not opened(node):
+            done.add(node)
+            yield node
+        else:
+            waiting.append((node, True))
+            waiting.extend((part, False) for part in reversed(node.parts))
 
 
 def transform(tree: Node, change: Callable[[Node], Node | None]) -> Node:
-    """The tree with nodes replaced from the top: where `change` gives a node it stands there, its parts unvisited."""
-    replaced = change(tree)
-    if replaced is not None:
-        return replaced
-    if not tree.parts:
-        return tree
-    parts = tuple(transform(part, change) for part in tree.parts)
-    if all(new is old for new, old in zip(parts, tree.parts, strict=True)):
-        return tree
-    return tree.rebuilt(parts)
+    """The tree with nodes replaced from the top: where `change` gives a node it stands there, its parts unvisited.
+
+    A part that several nodes share is asked about once.
+    """
+    done: dict[int, Node] = {}
+
+    def of(node: Node) -> Node:
+        if id(node) in done:
+            return done[id(node)]
+        new = change(node)
+        if new is None:
+            parts = tuple(map(of, node.parts))
+            new = node if all(map(operator.is_, parts, node.parts)) else node.rebuilt(parts)
+        done[id(node)] = new
+        return new
+
+    return of(tree)
+
+
+def number_of(tree: Node) -> float | None:
+    """The value of a literal with or without a sign, None for any other tree."""
+    if isinstance(tree, Number):
+        return tree.value
+    if isinstance(tree, Negative) and isinstance(tree.operand, Number):
+        return -tree.operand.value
+    return None
 
 
 def names_in(tree: Node) -> set[str]:

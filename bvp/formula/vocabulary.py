@@ -2,19 +2,29 @@
 
 from __future__ import annotations
 
-import re
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 
 from bvp.errors import ProblemError
+from bvp.formula.words import is_name, normal
 
 ONE_ARGUMENT = ("exp", "log", "sqrt", "sin", "cos", "tan", "sinh", "cosh", "tanh", "asin", "acos", "atan", "abs", "erf")
 TWO_ARGUMENTS = ("min", "max")
 OPERATORS = ("laplacian", "div", "grad")
 MEASURES = ("max", "min", "mean", "rms", "integral")
-CONSTANTS = ("pi",)
+CONSTANTS = ("pi", "π")
 RESERVED = (*ONE_ARGUMENT, *TWO_ARGUMENTS, *OPERATORS, "mean", "rms", "integral", *CONSTANTS)
-NAME = re.compile(r"[^\W\d]\w*\Z")
+MADE = (
+    "sign",
+    "step_le",
+    "log1p",
+    "expm1",
+    "cardinal",
+    "cardinal_slope",
+    "fit",
+    "fit_by_drift",
+    "fit_by_slope",
+)  # calls that only the tool makes
 
 
 @dataclass(frozen=True)
@@ -45,10 +55,17 @@ class Vocabulary:
         """ProblemError where a name is no name, is taken by the language, or stands for two things."""
         seen: dict[str, str] = {}
         for name, kind in self.kinds():
-            if not isinstance(name, str) or not NAME.match(name):
+            if not isinstance(name, str) or not is_name(name):
                 raise ProblemError(f"{origin}: {kind} is called {name!r}.\nExpected: a letter, then letters, digits or underscores.")
-            if name in RESERVED:
-                raise ProblemError(f'{origin}: {kind} is called "{name}", which the formula language keeps for itself.\nChoose another name.')
-            if name in seen:
-                raise ProblemError(f'{origin}: "{name}" is both {seen[name]} and {kind}.\nChoose different names.')
-            seen[name] = kind
+            spelled = normal(name)
+            if spelled in RESERVED or (spelled in MADE and kind.endswith("function")):
+                raise ProblemError(
+                    f'{origin}: {kind} is called "{name}", which the formula language keeps for itself.\nChoose another name.'
+                )
+            if spelled in seen:
+                raise ProblemError(f'{origin}: "{name}" is both {seen[spelled]} and {kind}.\nChoose different names.')
+            seen[spelled] = kind
+
+    def own_spelling(self) -> dict[str, str]:
+        """Every name by its normal spelling."""
+        return {normal(name): name for name, _ in self.kinds()}

@@ -17,11 +17,10 @@ import numpy as np
 import pytest
 
 from bvp.errors import ComputationError
-
 from cases import cli, run, store
 from cases.options import COMMANDS, NOT_BUILT, OPTIONS
 from cases.progress import Watch
-from tests.cases.made_results import branch, solved, traced
+from tests.cases.made_results import profile, solved, traced
 
 Heard = tuple[int, str, str]
 Say = Callable[..., Heard]
@@ -140,7 +139,7 @@ def test_folder_stands_alone(say: Say, tmp_path: Path) -> None:
         assert states["names"].tolist() == ["main, point 0", "main, point 20", "main, point 40", "turning point 1"]
         assert states["u"].shape == states["r"].shape == (4, 9)
         assert states["lam"][3] == 2.0
-        np.testing.assert_array_equal(states["u"][3], branch().turning_points[0].state.u)
+        np.testing.assert_array_equal(states["u"][3], profile(1.0).u)
     assert say("check", str(out / "case.toml"))[0] == 0
 
 
@@ -159,7 +158,7 @@ def test_resume(say: Say, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> No
 
 def interrupted(case: Any, watch: Any) -> Any:
     os.kill(os.getpid(), signal.SIGINT)
-    event = type("Event", (), {"point": 0, "parameter": 0.0, "measures": {}, "turning_points": 0})()
+    event = type("Event", (), {"branch": "main", "point": 0, "parameter": 0.0, "measures": {}, "turning_points": 0})()
     assert watch(event) is True
     return replace(traced(case), complete=False, reason="interrupted; what was found until then is given.")
 

@@ -118,7 +118,7 @@ def test_defaults_pass_the_judgement_they_stand_in_for() -> None:
 
 def test_what_the_schema_says_again_is_what_the_lower_floors_say() -> None:
     assert MOST_INTERVALS == bvp.grid.MOST_INTERVALS
-    assert FEWEST_INTERVALS == DISCRETIZATION["intervals"].least
+    assert DISCRETIZATION["intervals"].least == FEWEST_INTERVALS
     assert set(SCHEME) == set(bvp.schemes.scheme.KEYS)
     assert set(GEOMETRY.choices) == set(bvp.geometry.EXPONENTS)
 

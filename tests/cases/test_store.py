@@ -8,12 +8,13 @@ import os
 import subprocess
 import sys
 from pathlib import Path
+from types import SimpleNamespace
 from typing import Any
 
 import pytest
 
 from bvp.errors import InputError
-from cases import store
+from cases.keep import Keeper
 from cases.pieces import Pieces
 from cases.store import StoreError, identity_of, intact, mark_of, open_folder, refuse_other_run, write_whole
 
@@ -38,7 +39,7 @@ def kill_at(monkeypatch: pytest.MonkeyPatch, call: int) -> list[int]:
         return counted
 
     for name in ("fsync", "replace"):
-        monkeypatch.setattr(store.os, name, wrap(getattr(os, name)))
+        monkeypatch.setattr(os, name, wrap(getattr(os, name)))
     return seen
 
 
@@ -119,7 +120,7 @@ def test_a_write_that_fails_says_which_file_and_why(tmp_path: Path, monkeypatch:
 
     path = tmp_path / "result.json"
     write_whole(path, b"old")
-    monkeypatch.setattr(store.os, where, fail)
+    monkeypatch.setattr(os, where, fail)
     with pytest.raises(StoreError, match=rf"result.json cannot be written: {os.strerror(number)}"):
         write_whole(path, b"new")
     assert path.read_bytes() == b"old"
@@ -229,3 +230,37 @@ def test_pieces_come_back_in_order_and_as_far_as_they_are_whole(tmp_path: Path) 
     assert [piece.document["number"] for piece in Pieces(tmp_path).read()] == [1]
     Pieces(tmp_path).append({"number": 5}, {})
     assert json.loads(json.dumps(Pieces(tmp_path).read()[0].document)) == {"number": 1, "not finite": None}
+
+
+def event(point: int) -> Any:
+    """What a trace tells its watch of one point."""
+    return SimpleNamespace(branch="main", point=point, parameter=0.1 * point, measures={"max(u)": 0.2 * point}, turning_points=0)
+
+
+def test_points_are_kept_while_the_work_goes_on(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    clock = [0.0]
+    monkeypatch.setattr("cases.keep.time.monotonic", lambda: clock[0])
+    keeper = Keeper(Pieces(tmp_path), quiet=True)
+    for point in range(10):
+        clock[0] += 0.7
+        keeper(event(point))
+    pieces = Pieces(tmp_path).read()
+    assert [piece.arrays["parameter"].size for piece in pieces] == [3, 3, 3]
+    keeper.flush()
+    kept = Pieces(tmp_path).read()
+    assert [value for piece in kept for value in piece.arrays["max(u)"].tolist()] == [0.2 * point for point in range(10)]
+
+
+def test_keeping_that_fails_ends_the_keeping_alone(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    def fail(*_: Any) -> None:
+        raise StoreError("a piece cannot be written: No space left on device.")
+
+    pieces = Pieces(tmp_path)
+    monkeypatch.setattr(pieces, "append", fail)
+    keeper = Keeper(pieces, quiet=False)
+    for point in range(3):
+        keeper(event(point))
+        keeper.flush()
+    assert capsys.readouterr().err.count("No space left on device") == 1

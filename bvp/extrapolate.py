@@ -1,0 +1,111 @@
+"""Values on grids of halved steps extrapolated to step zero, only as far as measured exponents allow, with an uncertainty.
+
+Each column of the table (Richardson; Romberg) removes one power of the step. The power is read off the three finest
+entries and has to settle at a whole number before it is used: a scheme has the series it has, not the one assumed. Two
+families of grids, N 2^j and 3/2 N 2^j, hold the result against each other: a wrong power or the rounding of the solves
+that hides within one shows between the two.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+SAFETY = 4.0  # what an estimated truncation error is multiplied by; the campaign of tests found no miss at 2
+FAMILIES_SAFETY = 2.0
+SETTLED = 0.15  # how near to a whole number a measured exponent has to be: the next power contributes less than that
+DRIFT = 0.35  # an exponent further off may still be used where it moves towards the whole number from grid to grid
+HIGHEST = 14
+ROUNDING = 8 * 2.0**-53
+
+
+@dataclass(frozen=True)
+class Column:
+    """One column of the table: entries from coarse to fine, and the exponent that the next column would remove."""
+
+    entries: tuple[float, ...]
+    exponent: float | None
+
+
+@dataclass(frozen=True)
+class Limit:
+    """An extrapolated value, the estimate of its error, the order observed, and how many columns were used."""
+
+    value: float
+    error: float
+    order: float | None
+    columns: int
+
+
+def measured_exponent(entries: Sequence[float], floor: float) -> float | None:
+    """log2 of the ratio of the last two differences; None where they do not shrink or are within rounding."""
+    if len(entries) < 3:
+        return None
+    before, after = entries[-2] - entries[-3], entries[-1] - entries[-2]
+    if abs(after) <= 4.0 * floor or not before * after > 0.0 or not abs(after) < abs(before):
+        return None
+    return math.log2(before / after)
+
+
+def usable_exponent(entries: Sequence[float], above: float, floor: float) -> int | None:
+    """The whole exponent that the entries follow, greater than `above`; None where they follow none."""
+    last = measured_exponent(entries, floor)
+    if last is None:
+        return None
+    whole = round(last)
+    if not above < whole <= HIGHEST:
+        return None
+    gap = abs(last - whole)
+    if gap <= SETTLED:
+        earlier = measured_exponent(entries[:-1], floor)
+        return whole if earlier is None or abs(earlier - whole) < 1.5 else None
+    earlier = measured_exponent(entries[:-1], floor)
+    if earlier is not None and gap <= DRIFT and gap < 0.6 * abs(earlier - whole):
+        return whole
+    return None
+
+
+def limit_of(entries: Sequence[float], floor: float) -> Limit:
+    """The best limit of one family of halved steps: of all columns that exponents allow, the one with the least error.
+
+    The error of a column's last entry is that of its last difference, divided by what the next exponent would divide it
+    by where that is measured, and undivided where it is not. At least two entries.
+    """
+    column = list(entries)
+    order = measured_exponent(column, floor)
+    removed = 0.0
+    best: Limit | None = None
+    noise = floor
+    for depth in range(len(entries)):
+        if len(column) < 2:
+            break
+        gap = abs(column[-1] - column[-2])
+        whole = usable_exponent(column, removed, noise)
+        measured = measured_exponent(column, noise)
+        if whole is not None:
+            error = gap / (2.0**whole - 1.0)
+        elif measured is not None and measured > 0.5:
+            error = gap / (2.0 ** min(measured, removed + 2.0) - 1.0) * 2.0
+        else:
+            error = gap if depth == 0 or gap <= 8.0 * noise else 2.0 * gap
+        error = max(error, noise)
+        if best is None or error < best.error:
+            best = Limit(column[-1], error, order, depth)
+        if whole is None:
+            break
+        factor = 2.0**whole - 1.0
+        column = [after + (after - before) / factor for before, after in zip(column, column[1:], strict=False)]
+        noise *= 1.0 + 2.0 / factor
+        removed = float(whole)
+    assert best is not None
+    return best
+
+
+def combined(first: Sequence[float], second: Sequence[float], floor: float) -> tuple[Limit, float]:
+    """The limit of two families, and its uncertainty; the second family's grids are 3/2 as fine as the first's."""
+    one, other = limit_of(first, floor), limit_of(second, floor)
+    better = other if other.error <= one.error else one
+    apart = abs(one.value - other.value)
+    uncertainty = max(SAFETY * better.error, FAMILIES_SAFETY * apart, ROUNDING * abs(better.value), 2.0 * floor)
+    return better, uncertainty

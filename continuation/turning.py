@@ -1,0 +1,123 @@
+"""The turning point of a discrete branch: where the parameter has an extremum along it.
+
+Along the hyperplanes across a fixed tangent the parameter is a smooth function of the distance, whose derivative comes
+out of every bordered solve. Its zero is found by secants to the rounding of the solves; the tangent there is the null
+vector, and the parameter's error is of second order in what is left of the derivative.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+
+from bvp.discretize import DiscreteSystem
+from bvp.newton import Corrected, Scales, correct
+from continuation.path import Path, Point, border_through, norm_of
+
+Array = npt.NDArray[np.float64]
+
+MOST_SECANTS = 40
+POLISHED = 1e-12  # of the state: the last correction of the states on the way
+LEVEL = 1e-11  # what is left of the derivative, as a share of the curvature times the state
+
+
+@dataclass(frozen=True)
+class DiscreteTurning:
+    """A turning point of a discrete system: state, parameter, unit null vector, the parameter's curvature along it."""
+
+    u: Array
+    parameter: float
+    null: Array
+    curvature: float
+    scales: Scales
+    found: Corrected
+
+    @property
+    def states(self) -> str:
+        """On which side of it, in the parameter, the two states are."""
+        return "below" if self.curvature < 0 else "above"
+
+
+def between(path: Path, before: Point, after: Point) -> DiscreteTurning | None:
+    """The turning point between two points of a branch whose paces differ in sign; None where it cannot be closed in on."""
+    border = border_through(before, 0.0)
+    far = border.factor * float(np.dot(border.direction, after.u - before.u)) + border.corner * (after.parameter - before.parameter)
+    left, right = 0.0, far
+    left_pace, right_pace = before.pace, _pace_across(after, before)
+    if not left_pace * right_pace < 0:
+        return None
+    left_state, right_state = (before.u, before.parameter), (after.u, after.parameter)
+    scale = before.scales.parameter
+    found: Corrected | None = None
+    weight_left = weight_right = 1.0
+    for _ in range(MOST_SECANTS):
+        a, b = weight_left * left_pace, weight_right * right_pace
+        distance = (left * b - right * a) / (b - a)
+        share = (distance - left) / (right - left)
+        guess = (left_state[0] + share * (right_state[0] - left_state[0]), left_state[1] + share * (right_state[1] - left_state[1]))
+        found = path.step_from(before, distance, guess, tolerance=POLISHED)
+        if not found.ok:
+            return None
+        pace = found.pace
+        slope = (right_pace - left_pace) / (right - left)
+        if abs(pace) <= LEVEL * abs(slope) or abs(right - left) <= 1e-13 * abs(far):
+            break
+        if abs(pace) * abs(far) <= 1e-15 * scale and abs(pace / slope) < 1e-8:
+            break
+        # Regula falsi with the idle end's weight lowered (Anderson & Bjorck 1973, from memory), so that both ends close in.
+        if pace * right_pace < 0:
+            left, left_pace, left_state, weight_left = right, right_pace, right_state, 1.0
+            right, right_pace, right_state, weight_right = distance, pace, (found.u, found.parameter), 1.0
+        else:
+            lowered = 1.0 - pace / right_pace
+            weight_left *= lowered if lowered > 0 else 0.5
+            right, right_pace, right_state, weight_right = distance, pace, (found.u, found.parameter), 1.0
+    if found is None:
+        return None
+    return _turning(found, before.scales, (right_pace - left_pace) / (right - left) if right != left else 0.0)
+
+
+def _pace_across(point: Point, base: Point) -> float:
+    """dp by the distance along the base's tangent, at another point of the branch."""
+    border = border_through(base, 0.0)
+    across = border.factor * float(np.dot(border.direction, point.tangent)) + border.corner * point.pace
+    return point.pace / across
+
+
+def _turning(found: Corrected, scales: Scales, curvature: float) -> DiscreteTurning:
+    length = norm_of(found.tangent, 0.0, scales)
+    return DiscreteTurning(found.u, found.parameter, found.tangent / length, curvature / length**2, scales, found)
+
+
+def near(system: DiscreteSystem, u: Array, parameter: float, null: Array, curvature: float, scales: Scales) -> DiscreteTurning | str:
+    """The turning point of another grid near a known one: its state, null vector and curvature carried over.
+
+    Returns a sentence where Newton's method or the secants do not end.
+    """
+    path = Path(system, scales.state, scales.parameter)
+    direction = null / norm_of(null, 0.0, scales)
+    base = Point(u, parameter, direction, 0.0, 0.0, scales, None)  # type: ignore[arg-type]
+    guess = (u, parameter)
+    distance, slope = 0.0, curvature
+    last: tuple[float, float] | None = None
+    smallest = np.inf
+    for _ in range(MOST_SECANTS):
+        found = path.counted(correct(system, guess[0], guess[1], border_through(base, distance), scales, tolerance=POLISHED, most_steps=20))
+        if not found.ok:
+            return found.reason
+        if last is not None and distance != last[0]:
+            measured = (found.pace - last[1]) / (distance - last[0])
+            slope = measured if np.isfinite(measured) and measured != 0.0 and abs(distance - last[0]) > 1e-7 else slope
+        move = -found.pace / slope
+        if abs(move) <= LEVEL or (abs(move) <= 1e-7 and abs(move) >= smallest):
+            return _turning(found, scales, slope)
+        smallest = min(smallest, abs(move))
+        last = (distance, found.pace)
+        move = float(np.clip(move, -0.3, 0.3))
+        distance += move
+        if abs(distance) > 2.0:
+            return "the turning point is too far from that of the neighbouring grid"
+        guess = (found.u + move * found.tangent, found.parameter + move * found.pace)
+    return f"no turning point within {MOST_SECANTS} secants"
