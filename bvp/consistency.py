@@ -33,7 +33,13 @@ class Consistency:
 
 
 def consistency(of: Discretization, size: float, values: Mapping[str, float]) -> Consistency:
-    """The consistency of all rows at profiles of that size, parameters having the given values."""
+    """The consistency of all rows at profiles of that size, parameters having the given values; worked out once."""
+    if of.known_consistency is None:
+        of.known_consistency = _consistency(of, size, values)
+    return of.known_consistency
+
+
+def _consistency(of: Discretization, size: float, values: Mapping[str, float]) -> Consistency:
     if of.scheme.weight_powers:
         return Consistency(True)  # weights by node are no series; the built-in scheme that has them is exact for quartics
     rows = [("the difference equation", of.rows.inner.residual, None, False)]

@@ -6,6 +6,7 @@ parameter values, and evaluates residuals, derivatives and Newton's corrections.
 
 from __future__ import annotations
 
+from collections import OrderedDict
 from collections.abc import Mapping
 from functools import cached_property
 from types import ModuleType
@@ -51,6 +52,7 @@ class Discretization:
         self.trees = [self._hoisted(row) if row is not empty else list(row.trees) for row in sets]
         given = any(hasattr(function, "partials") for function in problem.functions.values())
         self.compiled = compiled and not given
+        self.known_consistency: Any = None  # what bvp.consistency found, which costs a few milliseconds
         self.follows = [tree for tree in self.hoisted.scalars if depends_on(tree, self.along)]
 
     def _hoisted(self, row: Row) -> list[Node]:
@@ -124,6 +126,26 @@ class Discretization:
             sets = (self.rows.inner, self.rows.first(), self.rows.left, self.rows.right)
             found[name] = [cancel(derivative(row.residual, Name(name))) if row else Name("#step") for row in sets]
         return found
+
+
+_MADE: OrderedDict[tuple[object, ...], Discretization] = OrderedDict()
+MOST_MADE = 64
+
+
+def discretization(problem: Problem, scheme: str | Scheme = "central", along: str | None = None, *, uniform: bool = True, compiled: bool = True) -> Discretization:
+    """A discretization, kept from an earlier call where the formulas are the same: parameter values do not matter to it."""
+    chosen = named(scheme)
+    stated = (problem.equations, problem.conditions, problem.ends, problem.geometry, problem.unknowns, problem.coordinate, tuple(problem.parameters))
+    guesses = tuple(problem.initial_guess.items())
+    functions = tuple((name, id(function)) for name, function in problem.functions.items())
+    key = (repr(chosen), along, uniform, compiled, stated, guesses, functions)
+    if key in _MADE:
+        _MADE.move_to_end(key)
+        return _MADE[key]
+    made = _MADE[key] = Discretization(problem, chosen, along, uniform=uniform, compiled=compiled)
+    while len(_MADE) > MOST_MADE:
+        _MADE.popitem(last=False)
+    return made
 
 
 class DiscreteSystem:

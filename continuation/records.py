@@ -28,7 +28,7 @@ class TurningPoint:
     """A place where the branch turns back in the parameter.
 
     `value` is the refined one, `uncertainty` the half-width within which the true value of the continuous problem
-    lies (None where it cannot be estimated: `notes` say why), `on_grid` the scheme's own on the trace's grid.
+    lies (None where it cannot be estimated: `notes` say why; the same for each measure), `on_grid` the scheme's own on the trace's grid.
     `states` is "below" or "above": the side, in the parameter, on which the two states exist.
     """
 
@@ -45,6 +45,7 @@ class TurningPoint:
     position: float  # arclength along the branch
     state: State | None = None
     notes: tuple[str, ...] = ()
+    measure_uncertainty: Mapping[str, float | None] = field(default_factory=dict)
 
 
 @dataclass(frozen=True)

@@ -1,0 +1,37 @@
+"""The grid that a trace asks for by a word: uniform, adaptive, or the formula of a map."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+
+import numpy as np
+import numpy.typing as npt
+
+from bvp.errors import InputError
+from bvp.formula import Node, Vocabulary, evaluate, parse
+from bvp.formula.arrays import numpy_functions
+from bvp.formula.tree import Name
+from bvp.grid import Grid
+from bvp.problem import Problem
+
+Array = npt.NDArray[np.float64]
+
+
+def grid_for(grid: str | Grid, intervals: int, problem: Problem) -> Grid:
+    """The grid: one given as such, "uniform", or a formula of s that maps [0, 1] on itself, such as s^2."""
+    if isinstance(grid, Grid):
+        return grid
+    if grid == "uniform":
+        return Grid(intervals)
+    if grid == "adaptive":
+        raise InputError('grid "adaptive" is not built yet.\nExpected: "uniform", or the formula of a map of s, such as "s^2" or "sinh(4*s)/sinh(4)".')
+    tree = parse(str(grid), "plain", Vocabulary(unknowns=(), coordinate="s"), f"{problem.origin}, grid")
+    return Grid(intervals, _map(tree))
+
+
+def _map(tree: Node) -> Callable[[Array], Array]:
+    def placed(s: Array) -> Array:
+        with np.errstate(all="ignore"):
+            return np.zeros(s.size) + evaluate(tree, {Name("s"): s}.__getitem__, numpy_functions())
+
+    return placed

@@ -1,0 +1,180 @@
+"""Turning points from one grid to the continuous problem: refined, with uncertainty, sensitivities and the side of the states."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+
+from bvp.consistency import Consistency
+from bvp.discretize import Discretization, DiscreteSystem
+from bvp.grid import Grid
+from bvp.measures import Measure
+from bvp.one_state import state_of
+from bvp.resample import carried
+from continuation import turning
+from continuation.path import Path, Point
+from continuation.records import TurningPoint
+from continuation.refinement import refined
+from continuation.turning import DiscreteTurning
+
+Array = npt.NDArray[np.float64]
+
+SINGULAR_SHIFT = 1e-9  # relative disturbance of the data from which the finest grid is solved a second time
+
+
+class TurningDetector:
+    """Collects the turning points of the discrete system that lie between neighbouring points of a branch."""
+
+    def __init__(self, most: int | None = None) -> None:
+        self.found: list[tuple[DiscreteTurning, float]] = []
+        self.missed = 0
+        self.most = most
+
+    def look(self, path: Path, before: Point, after: Point) -> None:
+        """Locate the turning point where the parameter changes its direction."""
+        if not before.pace * after.pace < 0.0:
+            return
+        located = turning.between(path, before, after)
+        if located is None:
+            self.missed += 1
+            return
+        share = abs(before.pace) / (abs(before.pace) + abs(after.pace))
+        self.found.append((located, before.arclength + share * (after.arclength - before.arclength)))
+
+
+@dataclass(frozen=True)
+class Setting:
+    """What refining needs of a trace: the discretization, its grid, parameter values, measures, digits, consistency."""
+
+    of: Discretization
+    grid: Grid
+    values: Mapping[str, float]
+    measures: Sequence[Measure]
+    digits: int | None
+    consistency: Consistency
+
+
+def turning_point(setting: Setting, located: DiscreteTurning, position: float, branch: str) -> TurningPoint:
+    """The record of a turning point: refined where digits are asked for, the discrete one alone otherwise."""
+    system = setting.of.on(setting.grid, setting.values)
+    notes: list[str] = []
+    if setting.digits is None:
+        return _record(setting, system, located, located.parameter, None, None, (), True, position, branch, located.parameter, {}, {}, notes)
+
+    systems: dict[int, DiscreteSystem] = {setting.grid.intervals: system}
+
+    def on(intervals: int) -> DiscreteSystem:
+        if intervals not in systems:
+            systems[intervals] = setting.of.on(setting.grid.refined(intervals), setting.values)
+        return systems[intervals]
+
+    even = setting.of.problem.axis
+
+    def find(intervals: int, known: DiscreteTurning, known_intervals: int) -> DiscreteTurning | str:
+        u, null = carried(known.u, intervals, even), carried(known.null, intervals, even)
+        found = turning.near(on(intervals), u, known.parameter, null, known.curvature, known.scales)
+        if isinstance(found, str):
+            return found
+        if (found.curvature < 0) != (known.curvature < 0):
+            return "the branch turns the other way there"
+        return found
+
+    def values(found: DiscreteTurning, intervals: int) -> dict[str, float]:
+        taken = measured(setting, on(intervals), found.u, found.parameter)
+        return {"": found.parameter, **taken}
+
+    def repeat(found: DiscreteTurning, intervals: int) -> float:
+        disturbed = found.u * (1.0 + SINGULAR_SHIFT * np.cos(np.arange(found.u.size)))
+        again = turning.near(on(intervals), disturbed, found.parameter * (1.0 + SINGULAR_SHIFT), found.null, found.curvature, found.scales)
+        return again.parameter if isinstance(again, DiscreteTurning) else found.parameter
+
+    result = refined(located, setting.grid.intervals, find, values, setting.digits, repeat)
+    notes += result.notes
+    uncertainties = dict(result.uncertainties)
+    if setting.consistency.ok is not True and result.survives:
+        uncertainties = dict.fromkeys(uncertainties)
+        notes.append(f"the value is the scheme's own: {setting.consistency.reason}")
+    names = [measure.text for measure in setting.measures]
+    return _record(
+        setting,
+        on(result.finest_intervals),
+        result.finest,
+        result.values[""] if result.survives else located.parameter,
+        uncertainties[""],
+        result.order,
+        result.entries,
+        result.survives,
+        position,
+        branch,
+        located.parameter,
+        {name: result.values[name] for name in names},
+        {name: uncertainties[name] for name in names},
+        notes,
+    )
+
+
+def _record(
+    setting: Setting,
+    system: DiscreteSystem,
+    located: DiscreteTurning,
+    value: float,
+    uncertainty: float | None,
+    order: float | None,
+    entries: tuple[object, ...],
+    survives: bool,
+    position: float,
+    branch: str,
+    on_grid: float,
+    measures: Mapping[str, float],
+    measure_uncertainty: Mapping[str, float | None],
+    notes: Sequence[str],
+) -> TurningPoint:
+    return TurningPoint(
+        branch=branch,
+        value=value,
+        uncertainty=uncertainty,
+        measures=measures or measured(setting, system, located.u, located.parameter),
+        states=located.states,
+        order=order,
+        on_grid=on_grid,
+        refinement=entries,  # type: ignore[arg-type]
+        survives=survives,
+        sensitivity=sensitivities(system, located),
+        position=position,
+        state=state_of(system, located.found),
+        notes=tuple(notes),
+        measure_uncertainty=measure_uncertainty,
+    )
+
+
+def measured(setting: Setting, system: DiscreteSystem, u: Array, parameter: float) -> dict[str, float]:
+    """The measures of a profile by their text."""
+    profiles = {setting.of.unknown: u[1:-1]}
+    values = {**system.values, setting.of.along: parameter}
+    places = system.places(parameter)
+    return {measure.text: measure.value(places, profiles, values) for measure in setting.measures}
+
+
+def sensitivities(system: DiscreteSystem, located: DiscreteTurning) -> dict[str, float | None]:
+    """d ln(value)/d ln(parameter) for every other parameter, from the left null vector w: -w.F_p/(w.F_lam) p/lam.
+
+    None where the value is 0, where a parameter is 0, or where the matrix gives no null vector.
+    """
+    others = [name for name in system.of.problem.parameters if name != system.of.along]
+    if not others:
+        return {}
+    rows = system.stored_rows(located.u, located.parameter).copy()
+    nothing: dict[str, float | None] = dict.fromkeys(others)
+    if not np.all(np.isfinite(rows[:, system.band.rows])) or not system.band.factor(rows, rows[4], located.null, 0.0).ok:
+        return nothing
+    left, _ = system.band.solve_transposed(np.zeros(system.size), 1.0)
+    found = dict(nothing)
+    for name in others:
+        slope = system.slopes_by(name, located.u, located.parameter)
+        change = -float(np.dot(left[system.band.rows], slope[system.band.rows]))
+        if located.parameter != 0.0 and np.isfinite(change):
+            found[name] = change * system.values[name] / located.parameter
+    return found
