@@ -7,6 +7,7 @@ memory). A trial outside of the domain of a formula is one without a finite corr
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 
 import numpy as np
@@ -52,7 +53,7 @@ class Scales:
 
     def size(self, squares: float, nodes: int, parameter: float) -> float:
         """The norm of a change with that sum of squares, and that change of the parameter."""
-        return float(np.sqrt(squares / nodes / self.state**2 + (parameter / self.parameter) ** 2))
+        return math.hypot(math.sqrt(squares / nodes) / self.state, parameter / self.parameter) if squares >= 0.0 else math.nan
 
 
 @dataclass(frozen=True)

@@ -63,11 +63,12 @@ def border_through(point: Point, distance: float) -> Border:
 
 
 class Path:
-    """The branch of one discrete system that is being followed; holds the largest sizes met so far."""
+    """The branch of one discrete system that is being followed; holds the least and the largest sizes that count."""
 
-    def __init__(self, system: DiscreteSystem, state_scale: float, parameter_scale: float) -> None:
+    def __init__(self, system: DiscreteSystem, least_state: float, least_parameter: float) -> None:
         self.system = system
-        self.largest_state, self.largest_parameter = state_scale, parameter_scale
+        self.least_state, self.least_parameter = least_state, least_parameter
+        self.largest_state = self.largest_parameter = 0.0
         self.steps = self.sweeps = 0
 
     def scales_at(self, u: Array, parameter: float) -> Scales:
@@ -75,7 +76,8 @@ class Path:
         size = float(np.sqrt(np.dot(u[1:-1], u[1:-1]) / (u.size - 2)))
         self.largest_state = max(self.largest_state, size)
         self.largest_parameter = max(self.largest_parameter, abs(parameter))
-        return Scales(max(size, STATE_FLOOR * self.largest_state), max(abs(parameter), PARAMETER_FLOOR * self.largest_parameter))
+        state = max(size, self.least_state, STATE_FLOOR * self.largest_state)
+        return Scales(state, max(abs(parameter), self.least_parameter, PARAMETER_FLOOR * self.largest_parameter))
 
     def counted(self, found: Corrected) -> Corrected:
         """Newton's effort added to the account."""

@@ -34,13 +34,9 @@ def first_point(system: DiscreteSystem, found: Corrected, sign: float) -> tuple[
     if reach == 0.0 and found.pace and steepness > 0.0:
         reach = _reach(system, found, slope, steepness, sign)
     reach = reach or 1.0
-    state = size if size > 0.0 else steepness * reach or 1.0
-    path = Path(system, state, reach)
+    path = Path(system, 0.0 if size > 0.0 else steepness * reach or 1.0, 0.0 if found.parameter else reach)
     path.counted(found)
-    # Scales of the first point: its floors are those just found, not shares of them.
-    path.largest_state, path.largest_parameter = max(state, 1e-300), reach
-    point = path.point(found, 0.0, None, sign)
-    return path, point
+    return path, path.point(found, 0.0, None, sign)
 
 
 def _reach(system: DiscreteSystem, found: Corrected, slope: Array, steepness: float, sign: float) -> float:

@@ -17,7 +17,7 @@ class StepLength:
 
     smallest: float = 1e-9
     largest: float = 0.25
-    first: float = 0.02
+    first: float = 0.1
 
     def accepted(self, turn: float, off: float) -> bool:
         """Whether a step that turned by so many radians, its prediction off by so much, is taken as it is."""
