@@ -162,8 +162,8 @@ class DiscreteSystem:
         self.left_kind, self.right_kind = discretization.rows.left_kind, discretization.rows.right_kind
         self._functions = discretization.problem.function_table(numpy_functions())
         self._floats = discretization.problem.function_table(float_functions())
-        self._fill_arrays()
         self._numbers = self._all_numbers(self.values.get(discretization.along, 0.0))
+        self._fill_arrays()
         self.step, self.tangent = np.zeros(self.size), np.zeros(self.size)
         self._work, self._info = np.zeros((3, self.size)), np.zeros(9)
         self._stored = None if discretization.compiled else np.zeros((5, self.size))
@@ -194,9 +194,9 @@ class DiscreteSystem:
         return {name: nodes, "#faces": np.append(faces, np.nan), **weights}
 
     def _fill_arrays(self) -> None:
-        grid, of, base = self.grid, self.of, self._base
+        of, base = self.of, self._base
         self.arrays: dict[str, Array] = {key: array for key, array in base.items() if key in of.array_index}
-        numbers = {**self.values, "#step": self._step(self.values), "#part": 1.0 / grid.intervals}
+        numbers = {name: self._numbers[index] for name, index in of.number_index.items()}
         inside = leaf_values(np.empty(0), "", base, numbers, 1, self.size - 1)
         with np.errstate(all="ignore"):
             for leaf, values in zip(of.hoisted.arrays.values(), evaluate_all(list(of.hoisted.arrays), inside, self._functions), strict=True):

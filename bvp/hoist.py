@@ -20,7 +20,7 @@ from bvp.schemes.scheme import STEP
 
 Array = npt.NDArray[np.float64]
 
-_WITH_DIGITS = {*float_functions()} - {"cardinal_slope"}
+_WITH_DIGITS = {*float_functions()}
 DIGITS = 40  # of the scalars: 2 ln cosh h at a step of 1e-6 keeps 16 of them
 
 
@@ -72,7 +72,7 @@ def hoist(trees: Iterable[Node], parameters: set[str], grid_names: set[str], mov
         if here == scalar and node.parts:
             return into.scalar(node)
         if here == nodal and node.parts and not moves(node):
-            return into.array(node)
+            return into.array(transform(node, lambda part: into.scalar(part) if part.parts and kind(part) == scalar else None))
         if isinstance(node, Binary) and node.operator == "/" and here != scalar and kind(node.right) == scalar and node.right.parts:
             inverse = into.scalar(Binary("/", Number(1.0), node.right))
             return Binary("*", transform(node.left, change), inverse)
@@ -88,9 +88,11 @@ def scalar_value(tree: Node, value: Callable[[Any], float], functions: Mapping[s
         return float(evaluate(tree, value, functions))
     import mpmath
 
+    from bvp.formula.precise import typed
+
     with mpmath.workdps(DIGITS):
         try:
-            result = evaluate(tree, lambda leaf: mpmath.mpf(value(leaf)), mpmath_functions())
+            result = evaluate(tree, lambda leaf: mpmath.mpf(value(leaf)), mpmath_functions(), number=typed)
         except (ZeroDivisionError, ValueError, OverflowError):
             return float("nan")
         return float(result) if isinstance(result, (float, mpmath.mpf)) else float("nan")

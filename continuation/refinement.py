@@ -20,7 +20,7 @@ Feature = TypeVar("Feature")
 
 COARSEST, FIRST_COARSE = 8, 48  # intervals of the coarsest grid: never fewer, and not more to begin with
 LEVELS = 4  # grids of each family before a first estimate
-FINEST = 1 << 16  # intervals beyond which the rounding of the solves gains on what finer steps bring
+FINEST = 1 << 14  # intervals beyond which a value is left with the uncertainty it has
 MOST_LEVELS = 12
 
 
