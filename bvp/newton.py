@@ -115,7 +115,7 @@ def correct(
         # After a full step with contraction c the next correction is about c times the square of this one over the last.
         if norm <= tolerance or (damping == 1.0 and taken > 0 and norm * contraction * contraction <= tolerance and contraction < 0.05):
             u += system.step
-            parameter += info[0]
+            parameter += float(info[0])
             taken += 1
             return ended("")
         if taken == most_steps:

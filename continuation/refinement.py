@@ -132,7 +132,7 @@ def _extrapolated(families: Sequence[Family[Feature]], values: Callable[[Feature
     uncertainties: dict[str, float | None] = {}
     order: float | None = None
     for name in next(iter(taken[0].values())):
-        columns = [[numbers[name] for numbers in one.values()] for one in taken]
+        columns = [[float(numbers[name]) for numbers in one.values()] for one in taken]
         if not all(np.all(np.isfinite(column)) for column in columns):
             limits[name], uncertainties[name] = float("nan"), None
             continue
@@ -140,7 +140,7 @@ def _extrapolated(families: Sequence[Family[Feature]], values: Callable[[Feature
         limits[name], uncertainties[name] = limit.value, uncertainty
         if not name:
             order = limit.order
-    entries = sorted((count, numbers[""]) for one in taken for count, numbers in one.items())
+    entries = sorted((count, float(numbers[""])) for one in taken for count, numbers in one.items())
     return limits, uncertainties, order, tuple(Refined(count, value) for count, value in entries)
 
 

@@ -176,5 +176,5 @@ def sensitivities(system: DiscreteSystem, located: DiscreteTurning) -> dict[str,
         slope = system.slopes_by(name, located.u, located.parameter)
         change = -float(np.dot(left[system.band.rows], slope[system.band.rows]))
         if located.parameter != 0.0 and np.isfinite(change):
-            found[name] = change * system.values[name] / located.parameter
+            found[name] = float(change * system.values[name] / located.parameter)
     return found

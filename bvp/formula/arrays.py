@@ -37,11 +37,20 @@ def numpy_functions() -> dict[str, Callable[..., Any]]:
         closed = (np.where(outer > 0.0, np.sin(root), np.sinh(root)) / root - cardinal(outer)) / outer
         return np.where(near, series, closed)
 
-    def each(name: str) -> Callable[..., Any]:
-        """A function of numbers applied to each pair."""
-        from bvp.formula.evaluate import float_functions
+    def fitted(part: int) -> Callable[..., Any]:
+        """The fitted weight or one of its derivatives, pair by pair in a kernel."""
 
-        return np.vectorize(float_functions()[name], otypes=[float])
+        def of_pairs(p: Any, z: Any) -> Any:
+            from bvp.kernels.special import weight, weights
+
+            if np.ndim(p) == 0 and np.ndim(z) == 0:
+                return weight(float(p), float(z), part)
+            pairs = [np.ascontiguousarray(side, dtype=float) for side in np.broadcast_arrays(p, z)]
+            out = np.empty(pairs[0].shape)
+            weights(*pairs, part, out)
+            return out
+
+        return of_pairs
 
     return {
         **{name: getattr(np, name) for name in same},
@@ -54,7 +63,7 @@ def numpy_functions() -> dict[str, Callable[..., Any]]:
         "step_le": lambda a, b: np.where(np.less_equal(a, b), 1.0, 0.0),
         "cardinal": cardinal,
         "cardinal_slope": cardinal_slope,
-        "fit": each("fit"),
-        "fit_by_drift": each("fit_by_drift"),
-        "fit_by_slope": each("fit_by_slope"),
+        "fit": fitted(0),
+        "fit_by_drift": fitted(1),
+        "fit_by_slope": fitted(2),
     }

@@ -163,3 +163,10 @@ def fit_by_slope(p: float, z: float) -> float:
 def step_le(a: float, b: float) -> float:
     """1 where a <= b, else 0."""
     return 1.0 if a <= b else 0.0
+
+
+@kernel
+def weights(p: np.ndarray, z: np.ndarray, part: int, out: np.ndarray) -> None:
+    """`weight` at every pair of two arrays of one shape (n,), into out."""
+    for i in range(out.shape[0]):
+        out[i] = weight(p[i], z[i], part)

@@ -1,0 +1,276 @@
+"""The steady states at a parameter value: of the equation, or of the difference scheme on one grid."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from typing import Any
+
+import numpy as np
+import numpy.typing as npt
+
+from bvp.discretize import DiscreteSystem
+from bvp.errors import InputError
+from bvp.newton import Corrected
+from bvp.one_state import solved, state_of
+from bvp.problem import Problem
+from bvp.resample import carried
+from bvp.state import State
+from continuation.asked import asked
+from continuation.follow import at_parameter
+from continuation.path import Path, Point
+from continuation.records import Branch, TurningPoint
+from continuation.refinement import refined
+from continuation.tracing import setting_of, traced
+from continuation.turning_refined import Setting, measured
+
+Array = npt.NDArray[np.float64]
+
+TWICE = 1e-6  # relative distance below which two states found are one
+MOST_INTERVALS_NEAR = 200_000  # intervals that are spent on telling two states next to a turning point apart
+
+
+@dataclass(frozen=True)
+class FoundState:
+    """One steady state: its measures with uncertainties, unstable directions, residual, the branch it lies on."""
+
+    measures: Mapping[str, float]
+    uncertainty: Mapping[str, float | None]
+    unstable_directions: int | None
+    residual: float
+    branch: str
+    state: State = field(repr=False)
+
+
+@dataclass(frozen=True)
+class StatesAt:
+    """The states at one parameter value, ordered by the first measure, with the margin to the nearest turning point.
+
+    asked : "equation" or "scheme". complete : whether the branch was followed to its end; states that no traced branch
+    reaches are not looked for.
+    """
+
+    asked: str
+    at: Mapping[str, float]
+    states: tuple[FoundState, ...]
+    margin: Mapping[str, Any]
+    complete: bool
+    notes: tuple[str, ...]
+    branch: Branch = field(repr=False)
+
+
+class Crossings:
+    """Collects the states of the discrete branch at one value of the parameter."""
+
+    def __init__(self, value: float) -> None:
+        self.value = value
+        self.found: list[Corrected] = []
+
+    def look(self, path: Path, before: Point, after: Point) -> None:
+        """Solve at the value where the step passes it; a point that sits on it belongs to the step that ends there."""
+        gap_before, gap_after = before.parameter - self.value, after.parameter - self.value
+        if gap_after == 0.0:
+            self.found.append(after.found)
+        elif gap_before * gap_after < 0.0:
+            here = at_parameter(path, before, after, self.value)
+            if here is not None:
+                self.found.append(here.found)
+        elif gap_before != 0.0 and before.pace * after.pace < 0.0:
+            self._look_around_turning(path, before, after)
+
+    def _look_around_turning(self, path: Path, before: Point, after: Point) -> None:
+        """Both states between a turning point and two points on the far side of the value."""
+        from continuation import turning
+
+        located = turning.between(path, before, after)
+        if located is None or (located.parameter - self.value) * (before.parameter - self.value) >= 0.0:
+            return
+        reach = math.sqrt(abs(2.0 * (located.parameter - self.value) / located.curvature)) if located.curvature else 0.0
+        for side in (-1.0, 1.0):
+            u = located.u + side * reach * located.null
+            here = solved(path.system, u, self.value)
+            if here.ok:
+                self.found.append(here)
+
+
+def states_at(problem: Problem, *, at: Mapping[str, float], along: str | None = None, discrete: bool = False, **keywords: Any) -> StatesAt:
+    """The steady states at given parameter values, on the branch traced in `along` from its start.
+
+    Of the equation: each discrete state is followed to finer grids and counts only if it settles there; its measures
+    are extrapolated. discrete = True: those of the scheme on exactly the grid asked for. Keywords as for `trace`.
+    Past a turning point there is none, and a note says where it lies.
+    """
+    name = along if along is not None else _traced_name(problem, at)
+    if name not in at:
+        at = {**at, name: problem.parameters[name] if keywords.get("start") is None else float(keywords["start"])}
+    value = float(at[name])
+    if not math.isfinite(value):
+        raise InputError(f"at {name} = {value}.\nExpected: a finite number.")
+    others = {other: number for other, number in at.items() if other != name}
+    begin = problem.parameters[name] if keywords.get("start") is None else float(keywords["start"])
+    keywords = {**keywords, "direction": _direction(begin, value, keywords.get("direction"))}
+    keywords.pop("turning_points_wanted", None)
+    asked_for = asked(problem, name, at=others, **{**keywords, "within": _range(keywords.get("within"), begin, value)})
+    crossings = Crossings(value)
+    branch = traced(asked_for, (crossings,))
+    finer = None if discrete else _finer_grid(branch, value)
+    if finer is not None and not isinstance(finer, str):
+        return states_at(problem, at=at, along=name, **{**keywords, "intervals": finer})
+    system = asked_for.of.on(asked_for.grid, {**asked_for.problem.parameters, name: value})
+    found = _distinct(system, [*(_start_state(system, asked_for.start, value)), *crossings.found])
+    setting = setting_of(asked_for, system)
+    notes = list(branch.notes)
+    states = []
+    for corrected in found:
+        polished = solved(system, corrected.u, value)
+        if not polished.ok:
+            notes.append(f"a state near {name} = {value:g} could not be solved to rounding: {polished.reason}")
+            continue
+        state = _discrete_state(setting, system, polished) if discrete else _real_state(setting, system, polished, notes)
+        if state is not None:
+            states.append(state)
+    first = asked_for.measures[0].text
+    states.sort(key=lambda one: one.measures[first])
+    margin = _margin(branch, value, discrete)
+    if finer is not None:
+        notes.append(finer)
+    elif not states:
+        notes.append(_why_none(branch, name, value, discrete, asked_for.grid.intervals))
+    notes.append("only states on the branch traced from its start are listed; others, not connected to it, are not looked for.")
+    given = {**others, name: value}
+    return StatesAt("scheme" if discrete else "equation", given, tuple(states), margin, branch.complete and finer is None, tuple(dict.fromkeys(notes)), branch)
+
+
+def _traced_name(problem: Problem, at: Mapping[str, float]) -> str:
+    if len(at) == 1:
+        return next(iter(at))
+    if len(problem.parameters) == 1:
+        return next(iter(problem.parameters))
+    raise InputError("which of the parameters leads to the states is not said.\nExpected: along, the one that the branch is traced in.")
+
+
+def _direction(begin: float, value: float, asked_direction: str | None) -> str:
+    if asked_direction == "both":
+        return "both"
+    return "up" if value > begin else "down" if value < begin else asked_direction or "up"
+
+
+def _range(within: Any, begin: float, value: float) -> Any:
+    """The trace's range: the one asked for, widened where the value lies outside."""
+    if within is None:
+        return None
+    lowest, highest = within
+    span = abs(value - begin)
+    return min(lowest, value - 0.01 * span), max(highest, value + 0.01 * span)
+
+
+def _start_state(system: DiscreteSystem, start: float, value: float) -> list[Corrected]:
+    if start != value:
+        return []
+    found = solved(system, system.guess(value), value)
+    return [found] if found.ok else []
+
+
+def _distinct(system: DiscreteSystem, found: list[Corrected]) -> list[Corrected]:
+    """Each state once."""
+    kept: list[Corrected] = []
+    for one in found:
+        size = float(np.max(np.abs(one.u[1:-1]))) or 1.0
+        if all(float(np.max(np.abs(one.u - other.u)[1:-1])) > TWICE * size for other in kept):
+            kept.append(one)
+    return kept
+
+
+def _discrete_state(setting: Setting, system: DiscreteSystem, found: Corrected) -> FoundState:
+    state = state_of(system, found)
+    taken = measured(setting, system, found.u, found.parameter)
+    return FoundState(taken, dict.fromkeys(taken), state.unstable_directions, state.residual, "main", state)
+
+
+def _real_state(setting: Setting, system: DiscreteSystem, found: Corrected, notes: list[str]) -> FoundState | None:
+    """The state of the equation that a discrete state leads to on finer grids; None where it leads to none."""
+    systems = {system.grid.intervals: system}
+    value = found.parameter
+
+    def on(intervals: int) -> DiscreteSystem:
+        if intervals not in systems:
+            systems[intervals] = setting.of.on(setting.grid.refined(intervals), system.values)
+        return systems[intervals]
+
+    def find(intervals: int, known: Corrected, known_intervals: int) -> Corrected | str:
+        start = carried(known.u, intervals, setting.of.problem.axis)
+        again = solved(on(intervals), start, value)
+        if not again.ok:
+            return again.reason
+        size = float(np.max(np.abs(start[1:-1]))) or 1.0
+        return again if float(np.max(np.abs(again.u - start)[1:-1])) <= 0.3 * size else "the state jumps away there"
+
+    def values(one: Corrected, intervals: int) -> dict[str, float]:
+        taken = measured(setting, on(intervals), one.u, value)
+        return {"": next(iter(taken.values())), **taken}
+
+    def repeat(one: Corrected, intervals: int) -> float:
+        again = solved(on(intervals), one.u * (1.0 + 1e-9 * np.cos(np.arange(one.u.size))), value)
+        return values(again if again.ok else one, intervals)[""]
+
+    result = refined(found, system.grid.intervals, find, values, setting.digits or 8, repeat)
+    if not result.survives:
+        taken = values(found, system.grid.intervals)[""]
+        text = setting.measures[0].text
+        notes.append(f"a state of the scheme with {text} = {taken:.6g} is left out: it {result.notes[0] if result.notes else 'does not settle'}.")
+        return None
+    names = [measure.text for measure in setting.measures]
+    uncertainties = {name: result.uncertainties[name] if setting.consistency.ok is True else None for name in names}
+    if setting.consistency.ok is not True:
+        notes.append(f"the states are the scheme's own: {setting.consistency.reason}.")
+    state = state_of(on(result.finest_intervals), result.finest)
+    return FoundState({name: result.values[name] for name in names}, uncertainties, state.unstable_directions, state.residual, "main", state)
+
+
+def _finer_grid(branch: Branch, value: float) -> int | str | None:
+    """The intervals that show the states between a scheme's own turning point and the refined one, where the value lies there.
+
+    A sentence where no grid can: the value is too near to the turning point to tell. None where there is no need.
+    """
+    for one in branch.turning_points:
+        if not one.survives:
+            continue
+        inside = value < one.value if one.states == "below" else value > one.value
+        hidden = value > one.on_grid if one.states == "below" else value < one.on_grid
+        distance = abs(one.value - value)
+        if one.uncertainty is not None and distance <= one.uncertainty:
+            return f"{branch.along} = {value:.12g} is within the uncertainty of the turning point at {one.value:.12g}: whether states exist there is undecided."
+        if inside and hidden:
+            gain = abs(one.value - one.on_grid) / distance
+            intervals = 2 * math.ceil(1.2 * branch.intervals * gain ** (1.0 / max(one.order or 2.0, 1.0)) / 2.0)
+            if intervals > MOST_INTERVALS_NEAR:
+                return (
+                    f"{branch.along} = {value:.12g} is so near to the turning point at {one.value:.12g} that {intervals} intervals would be needed to tell its two states apart; "
+                    "they exist, and differ little from the state at the turning point."
+                )
+            return intervals
+    return None
+
+
+def _margin(branch: Branch, value: float, discrete: bool) -> dict[str, Any]:
+    """How far the value is from the nearest turning point of the branch, in the parameter and as a share of it."""
+    reached: list[TurningPoint] = [one for one in branch.turning_points if discrete or one.survives]
+    if not reached:
+        return {}
+    nearest = min(reached, key=lambda one: abs((one.on_grid if discrete else one.value) - value))
+    place = nearest.on_grid if discrete else nearest.value
+    return {
+        "turning_point": float(place),
+        "uncertainty": None if discrete else nearest.uncertainty,
+        "distance": float(place - value),
+        "share": float((place - value) / place) if place else None,
+    }
+
+
+def _why_none(branch: Branch, name: str, value: float, discrete: bool, intervals: int) -> str:
+    margin = _margin(branch, value, discrete)
+    whose = f"the scheme on {intervals} intervals has no state" if discrete else "the equation has no state on this branch"
+    if margin:
+        return f"{whose} at {name} = {value:g}: the branch turns back at {name} = {margin['turning_point']:.10g}."
+    return f"{whose} at {name} = {value:g}: the branch ended before ({branch.ended} at {name} = {branch.parameter[-1]:.6g})."
