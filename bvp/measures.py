@@ -33,6 +33,16 @@ class Measure:
         sides = (tree.left, tree.right) if isinstance(tree, Relation) else (tree,)
         self._sides = [self._numbered(problem_where(side, problem)) for side in sides]
         self._check()
+        self._plain_peak = self._plain_peak_of()
+
+    def _plain_peak_of(self) -> str | None:
+        """The unknown of max(u), which most traces take at every step; None for any other measure."""
+        parts = list(self._parts.values())
+        if len(self._sides) != 1 or not isinstance(self._sides[0], Name) or len(parts) != 1:
+            return None
+        part = parts[0]
+        inside = part.arguments[0] if isinstance(part, Call) and part.function == "max" else None
+        return inside.name if isinstance(inside, Name) and inside.name in self.problem.unknowns else None
 
     def _numbered(self, tree: Node) -> Node:
         """The tree with each measured part replaced by a leaf that receives its number."""
@@ -62,6 +72,8 @@ class Measure:
 
     def value(self, places: Array, profiles: Mapping[str, Array], parameters: Mapping[str, float]) -> float:
         """The measure of a state, of a relation the left side less the right; nan where it has no value."""
+        if self._plain_peak is not None:
+            return largest(profiles[self._plain_peak], self.problem.axis)[0]
         values = {name: self._part(node, places, profiles, parameters) for name, node in self._parts.items()}
         known: Callable[[Any], float] = lambda leaf: values[leaf.name] if leaf.name in values else parameters[leaf.name]  # noqa: E731
         functions = self.problem.function_table(float_functions())

@@ -79,16 +79,16 @@ def state_of(system: DiscreteSystem, found: Corrected) -> State:
     return State(
         problem=system.of.problem,
         x=system.places(found.parameter),
-        u=found.u[1:-1].copy(),
+        u=found.u[1:-1],
         parameters=fixed,
         scheme=system.of.scheme.name,
         intervals=system.grid.intervals,
         ok=found.ok,
         reason=found.reason,
-        residual=residual_of(system, found.u, found.parameter),
+        residual_of=lambda: residual_of(system, found.u, found.parameter),
         newton_steps=found.steps,
         unstable_directions=unstable_directions(found),
-        nodal=found.u.copy(),
+        nodal=found.u,
     )
 
 

@@ -127,7 +127,7 @@ class Problem:
         return trees
 
     def _with_where(self, tree: Node) -> Node:
-        return transform(tree, lambda node: self.where.get(node.name) if isinstance(node, Name) else None)
+        return _bounded(transform(tree, lambda node: self.where.get(node.name) if isinstance(node, Name) else None), self.origin)
 
     def _state_equations(self, texts: Sequence[str], geometry: str) -> None:
         origin = self.origin
@@ -212,8 +212,10 @@ class Problem:
 
     def end_values(self, parameters: Mapping[str, float]) -> tuple[float, float]:
         """The two ends at given parameter values."""
-        left, right = (self.number(end, parameters) for end in self.ends)
-        return left, right
+        left, right = self.ends
+        if isinstance(left, Number) and isinstance(right, Number):
+            return left.value, right.value
+        return self.number(left, parameters), self.number(right, parameters)
 
     def number(self, tree: Node, parameters: Mapping[str, float]) -> float:
         """The value of a formula of parameters."""
@@ -263,6 +265,19 @@ def order_of(tree: Node, unknown: str, origin: str) -> int:
     return highest
 
 
+LARGEST_TREE, HIGHEST_TREE = 20_000, 300  # nodes, and levels: what formulas put into formulas may grow to
+
+
+def _bounded(tree: Node, origin: str) -> Node:
+    """The tree; ProblemError where [where] formulas put into each other have made it too large."""
+    if tree.size > LARGEST_TREE or tree.height > HIGHEST_TREE:
+        raise ProblemError(
+            f"{origin}, where: the formulas put into each other make one of {tree.size} parts on {tree.height} levels.\n"
+            f"The bounds are {LARGEST_TREE} and {HIGHEST_TREE}.\nShorten them, or name less by way of each other."
+        )
+    return tree
+
+
 def _copied(problem: Problem, **changes: Any) -> Problem:
     copy = object.__new__(Problem)
     for name, value in {**problem.__dict__, **changes}.items():
@@ -292,7 +307,8 @@ def _where(texts: Mapping[str, str], vocabulary: Vocabulary, origin: str) -> dic
         if name in above:
             raise ProblemError(f"{origin}, where: {' needs '.join([*above, name])}, a circle.\nExpected: formulas that can be worked out one after the other.")
         if name not in done:
-            done[name] = transform(raw[name], lambda node: resolve(node.name, (*above, name)) if isinstance(node, Name) and node.name in raw else None)
+            put_in = transform(raw[name], lambda node: resolve(node.name, (*above, name)) if isinstance(node, Name) and node.name in raw else None)
+            done[name] = _bounded(put_in, origin)
         return done[name]
 
     return {name: resolve(name, ()) for name in raw}

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
 from functools import cached_property
 from typing import Any
@@ -21,8 +21,7 @@ Array = npt.NDArray[np.float64]
 class State:
     """A state of a discrete system, or what Newton's method was left with where it is not `ok`.
 
-    x : nodes, shape (N + 1,). u : the unknown there. residual : the largest over the rows of |row| over the sum of the
-    sizes of its terms. unstable_directions : None where stability is not defined.
+    x : nodes, shape (N + 1,). u : the unknown there. unstable_directions : None where stability is not defined.
     """
 
     problem: Problem = field(repr=False)
@@ -33,10 +32,10 @@ class State:
     intervals: int
     ok: bool
     reason: str
-    residual: float
     newton_steps: int
     unstable_directions: int | None = None
     nodal: Array = field(default_factory=lambda: np.empty(0), repr=False)  # with ghosts, for going on from here
+    residual_of: Callable[[], float] = field(default=lambda: float("nan"), repr=False)
 
     def __call__(self, x: Any) -> Any:
         """The unknown at one place or at several, by the interpolant through seven neighbouring nodes."""
@@ -46,6 +45,11 @@ class State:
         even = self.problem.axis
         values = np.array([at_index(self.u, index_of(self.x, float(place), even), even) for place in places.ravel()])
         return float(values[0]) if np.ndim(x) == 0 else values.reshape(np.shape(x))
+
+    @cached_property
+    def residual(self) -> float:
+        """The largest over the rows of |row| over the sum of the sizes of its terms, worked out when asked for."""
+        return self.residual_of()
 
     @cached_property
     def profiles(self) -> dict[str, Array]:

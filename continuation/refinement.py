@@ -65,14 +65,15 @@ def refined(
     repeat: Callable[[Feature, int], float],
     *,
     most: int = FINEST,
+    coarsest: int | None = None,
 ) -> Refinement[Feature]:
     """Refine what was found on a grid of `intervals`.
 
     find(N, feature, M) looks on N intervals for the feature known on M, and returns it or a sentence why not. values
     gives the numbers to extrapolate, the main one under "". repeat solves the finest again from disturbed data: what it
-    differs by is the rounding of the solves. Ends once the main value has its digits, or at `most` intervals.
+    differs by is the rounding of the solves. coarsest : an even number of intervals to begin with. Ends once the main value has its digits, or at `most` intervals.
     """
-    base = int(np.clip(2 * (intervals // 16), COARSEST, FIRST_COARSE))
+    base = coarsest or int(np.clip(2 * (intervals // 16), COARSEST, FIRST_COARSE))
     families = (Family[Feature](base), Family[Feature](base * 3 // 2))
     known: dict[int, Feature] = {intervals: start}
     notes: list[str] = []

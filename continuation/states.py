@@ -216,6 +216,10 @@ def _real_state(setting: Setting, system: DiscreteSystem, found: Corrected, note
 
     result = refined(found, system.grid.intervals, find, values, setting.digits or 8, repeat)
     if not result.survives:
+        # Next to a turning point the coarse grids have lost the state already: begin with grids like the one it was found on.
+        near = 2 * (system.grid.intervals // 4)
+        result = refined(found, system.grid.intervals, find, values, setting.digits or 8, repeat, coarsest=near, most=8 * near)
+    if not result.survives:
         taken = values(found, system.grid.intervals)[""]
         text = setting.measures[0].text
         notes.append(f"a state of the scheme with {text} = {taken:.6g} is left out: it {result.notes[0] if result.notes else 'does not settle'}.")
