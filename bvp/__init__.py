@@ -7,8 +7,8 @@ from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
     from bvp.grid import Grid
-    from bvp.problem import Problem
     from bvp.one_state import solve
+    from bvp.problem import Problem
     from bvp.state import State
 
 _PLACES = {"Problem": "bvp.problem", "Grid": "bvp.grid", "State": "bvp.state", "solve": "bvp.one_state", "MeasuredFunction": "bvp.measured"}

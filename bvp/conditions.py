@@ -29,12 +29,19 @@ class Condition:
         """The unknowns whose derivative it holds at a side."""
         found = set()
         for node in walk(self.tree):
-            if isinstance(node, At) and node.location == Name(side) and isinstance(node.operand, Prime) and isinstance(node.operand.operand, Name):
+            if (
+                isinstance(node, At)
+                and node.location == Name(side)
+                and isinstance(node.operand, Prime)
+                and isinstance(node.operand.operand, Name)
+            ):
                 found.add(node.operand.operand.name)
         return frozenset(found)
 
 
-def placed_condition(tree: Node, text: str, origin: str, ends: tuple[Node, Node], parameters: Mapping[str, float], coordinate: str) -> Condition:
+def placed_condition(
+    tree: Node, text: str, origin: str, ends: tuple[Node, Node], parameters: Mapping[str, float], coordinate: str
+) -> Condition:
     """The condition with each place recognised as the left or the right end.
 
     Raises ProblemError where a place is no end of the domain.
@@ -54,7 +61,9 @@ def placed_condition(tree: Node, text: str, origin: str, ends: tuple[Node, Node]
 
     condition = Condition(transform(tree, placed), text, origin)
     if not condition.sides and "integral" not in text:
-        raise ProblemError(f'{origin}: "{text}" holds no unknown at an end.\nExpected: something like u(0) = 0 or u\'({write(ends[1])}) + u({write(ends[1])}) = 0.')
+        raise ProblemError(
+            f'{origin}: "{text}" holds no unknown at an end.\nExpected: something like u(0) = 0 or u\'({write(ends[1])}) + u({write(ends[1])}) = 0.'
+        )
     return condition
 
 

@@ -62,7 +62,9 @@ def _consistency(of: Discretization, size: float, values: Mapping[str, float]) -
     return Consistency(True)
 
 
-def _factor(of: Discretization, row: Node, condition: Node | None, axis: bool, size: float, values: Mapping[str, float], seed: int) -> tuple[int, float]:
+def _factor(
+    of: Discretization, row: Node, condition: Node | None, axis: bool, size: float, values: Mapping[str, float], seed: int
+) -> tuple[int, float]:
     """The power of the step and the factor between the row's leading term and the equation's value."""
     chance = random.Random(1000 + seed)
     problem = of.problem
@@ -81,7 +83,9 @@ def _factor(of: Discretization, row: Node, condition: Node | None, axis: bool, s
         place[2] = 0.0
     functions = {**series_functions(), **_other_functions(of)}
     row_series = evaluate(row, _discrete_leaf(of, profile, place, left, length, given), functions)
-    continuous = _continuous(condition if condition is not None else problem.equations[0].tree, of, profile, place, left, length, given, functions)
+    continuous = _continuous(
+        condition if condition is not None else problem.equations[0].tree, of, profile, place, left, length, given, functions
+    )
     value = _constant_term(continuous)
     row_series = row_series if isinstance(row_series, Series) else Series.constant(float(row_series), TERMS)
     power = row_series.valuation
@@ -138,7 +142,9 @@ def _composed(profile: list[float], place: list[float], shift: float) -> Series:
     return total
 
 
-def _discrete_leaf(of: Discretization, profile: list[float], place: list[float], left: float, length: float, given: Mapping[str, float]) -> Callable[[Node], Any]:
+def _discrete_leaf(
+    of: Discretization, profile: list[float], place: list[float], left: float, length: float, given: Mapping[str, float]
+) -> Callable[[Node], Any]:
     def nodal(name: str, offset: float) -> Any:
         if name == of.unknown:
             return _composed(profile, place, offset)
@@ -163,7 +169,16 @@ def _discrete_leaf(of: Discretization, profile: list[float], place: list[float],
     return leaf
 
 
-def _continuous(tree: Node, of: Discretization, profile: list[float], place: list[float], left: float, length: float, given: Mapping[str, float], functions: Mapping[str, Any]) -> Any:
+def _continuous(
+    tree: Node,
+    of: Discretization,
+    profile: list[float],
+    place: list[float],
+    left: float,
+    length: float,
+    given: Mapping[str, float],
+    functions: Mapping[str, Any],
+) -> Any:
     """The equation as a series in the reference coordinate around the place, whose constant term is its value there."""
     problem = of.problem
     u = Series.polynomial(profile, TERMS)

@@ -38,7 +38,9 @@ class Discretization:
     compiled = False evaluates the rows by NumPy: nothing to compile, and three times the time a node.
     """
 
-    def __init__(self, problem: Problem, scheme: str | Scheme = "central", along: str | None = None, *, uniform: bool = True, compiled: bool = True) -> None:
+    def __init__(
+        self, problem: Problem, scheme: str | Scheme = "central", along: str | None = None, *, uniform: bool = True, compiled: bool = True
+    ) -> None:
         self.problem = problem
         self.scheme = named(scheme)
         self.along = along if along is not None else next(iter(problem.parameters), "#none")
@@ -132,10 +134,20 @@ _MADE: OrderedDict[tuple[object, ...], Discretization] = OrderedDict()
 MOST_MADE = 64
 
 
-def discretization(problem: Problem, scheme: str | Scheme = "central", along: str | None = None, *, uniform: bool = True, compiled: bool = True) -> Discretization:
+def discretization(
+    problem: Problem, scheme: str | Scheme = "central", along: str | None = None, *, uniform: bool = True, compiled: bool = True
+) -> Discretization:
     """A discretization, kept from an earlier call where the formulas are the same: parameter values do not matter to it."""
     chosen = named(scheme)
-    stated = (problem.equations, problem.conditions, problem.ends, problem.geometry, problem.unknowns, problem.coordinate, tuple(problem.parameters))
+    stated = (
+        problem.equations,
+        problem.conditions,
+        problem.ends,
+        problem.geometry,
+        problem.unknowns,
+        problem.coordinate,
+        tuple(problem.parameters),
+    )
     guesses = tuple(problem.initial_guess.items())
     functions = tuple((name, id(function)) for name, function in problem.functions.items())
     key = (repr(chosen), along, uniform, compiled, stated, guesses, functions)
@@ -199,7 +211,9 @@ class DiscreteSystem:
         numbers = {name: self._numbers[index] for name, index in of.number_index.items()}
         inside = leaf_values(np.empty(0), "", base, numbers, 1, self.size - 1)
         with np.errstate(all="ignore"):
-            for leaf, values in zip(of.hoisted.arrays.values(), evaluate_all(list(of.hoisted.arrays), inside, self._functions), strict=True):
+            for leaf, values in zip(
+                of.hoisted.arrays.values(), evaluate_all(list(of.hoisted.arrays), inside, self._functions), strict=True
+            ):
                 held = np.full(self.size, np.nan)
                 held[1:-1] = values
                 self.arrays[leaf.name] = held
@@ -255,7 +269,19 @@ class DiscreteSystem:
         numbers = self.numbers(parameter)
         rows = self._rows if self._stored is None else self.stored_rows(u, parameter)
         self.of.module.sweep(
-            u, rows, numbers, self.left_kind, self.right_kind, direction, factor, corner, border, self._work, self.step, self.tangent, self._info
+            u,
+            rows,
+            numbers,
+            self.left_kind,
+            self.right_kind,
+            direction,
+            factor,
+            corner,
+            border,
+            self._work,
+            self.step,
+            self.tangent,
+            self._info,
         )
         if self._info[4] > 0:
             self._sweep_with_pivoting(u, parameter, direction, factor, corner, border)
@@ -288,7 +314,9 @@ class DiscreteSystem:
         self._evaluate(self.of.trees, u, named_numbers, self._stored, range(5), self.arrays)
         return self._stored
 
-    def _evaluate(self, trees: list[list[Node]], u: Array, numbers: Mapping[str, float], out: Array, which: Any, arrays: Mapping[str, Array]) -> None:
+    def _evaluate(
+        self, trees: list[list[Node]], u: Array, numbers: Mapping[str, float], out: Array, which: Any, arrays: Mapping[str, Array]
+    ) -> None:
         """The trees of inner nodes, left node, left condition and right condition, each on its own rows of `out`."""
         last = self.size - 1
         inner, first, left, right = trees
@@ -310,7 +338,12 @@ class DiscreteSystem:
     def slopes_by(self, name: str, u: Array, parameter: float) -> Array:
         """Derivatives of every row by any parameter, shape (n,), in the places of `stored_rows`."""
         numbers = self.numbers(parameter)
-        values = {**self.values, self.of.along: parameter, "#step": numbers[self.of.number_index["#step"]], "#part": 1.0 / self.grid.intervals}
+        values = {
+            **self.values,
+            self.of.along: parameter,
+            "#step": numbers[self.of.number_index["#step"]],
+            "#part": 1.0 / self.grid.intervals,
+        }
         out = np.zeros((1, self.size))
         trees = [[tree] for tree in self.of.slopes_of_parameters[name]]
         self._evaluate(trees, u, values, out, range(1), self._base)
@@ -329,4 +362,3 @@ class DiscreteSystem:
             guess = np.zeros(self.size) + evaluate_all([tree], values.__getitem__, self._functions)[0]
         guess[[0, -1]] = np.where(np.isfinite(guess[[0, -1]]), guess[[0, -1]], guess[[1, -2]])
         return guess
-

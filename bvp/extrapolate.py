@@ -17,7 +17,9 @@ FAMILIES_SAFETY = 2.0
 SETTLED = 0.15  # how near to a whole number a measured exponent has to be: the next power contributes less than that
 DRIFT = 0.35  # an exponent further off may still be used where it moves towards the whole number from grid to grid
 HIGHEST = 14
-ROUNDING = 2e-14  # relative, of a sum of a few hundred rounded terms that the solves leave; a chosen floor, far above what was measured (1e-15)
+ROUNDING = (
+    2e-14  # relative, of a sum of a few hundred rounded terms that the solves leave; a chosen floor, far above what was measured (1e-15)
+)
 
 
 @dataclass(frozen=True)

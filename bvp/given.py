@@ -30,5 +30,7 @@ class GivenFunction:
         partial = self.partials[orders.index(1)] if sum(orders) == 1 else None
         if partial is None:
             wanted = ", ".join(name for name, order in zip(self.argument_names, orders, strict=True) for _ in range(order))
-            raise ProblemError(f"the derivative by {wanted} of the given function is needed and was not given.\nGive it under `derivatives`.")
+            raise ProblemError(
+                f"the derivative by {wanted} of the given function is needed and was not given.\nGive it under `derivatives`."
+            )
         return partial(*values)

@@ -78,7 +78,9 @@ class Grid:
 def check_intervals(intervals: object) -> None:
     """InputError unless this is a number of intervals that a grid can have."""
     if isinstance(intervals, bool) or not isinstance(intervals, (int, np.integer)):
-        raise InputError(f"intervals = {intervals!r} is not a whole number.\nExpected: how many intervals the domain is cut into, such as 200.")
+        raise InputError(
+            f"intervals = {intervals!r} is not a whole number.\nExpected: how many intervals the domain is cut into, such as 200."
+        )
     if not FEWEST_INTERVALS <= intervals <= MOST_INTERVALS:
         raise InputError(
             f"intervals = {intervals} is outside {FEWEST_INTERVALS} to {MOST_INTERVALS}.\n"

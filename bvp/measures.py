@@ -63,12 +63,16 @@ class Measure:
             stray += [node.operand.name for node in walk(side) if isinstance(node, Prime) and isinstance(node.operand, Name)]
             if stray:
                 name = stray[0]
-                raise InputError(f'{self.place}: "{self.text}" holds {name} without a place.\nExpected: max({name}), {name}(…) at a place, mean({name}) or the like.')
+                raise InputError(
+                    f'{self.place}: "{self.text}" holds {name} without a place.\nExpected: max({name}), {name}(…) at a place, mean({name}) or the like.'
+                )
         for node in self._parts.values():
             if isinstance(node, Call):
                 for inner in walk(node.arguments[0]):
                     if isinstance(inner, At) or (isinstance(inner, Call) and inner.function in MEASURES and len(inner.arguments) == 1):
-                        raise InputError(f'{self.place}: "{self.text}" has a measure inside a measure.\nExpected: one around a formula of the unknowns.')
+                        raise InputError(
+                            f'{self.place}: "{self.text}" has a measure inside a measure.\nExpected: one around a formula of the unknowns.'
+                        )
 
     def value(self, places: Array, profiles: Mapping[str, Array], parameters: Mapping[str, float]) -> float:
         """The measure of a state, of a relation the left side less the right; nan where it has no value."""
@@ -109,7 +113,9 @@ class Measure:
         def leaf(node: Any) -> Any:
             if isinstance(node, Prime):
                 if not isinstance(node.operand, Name) or node.operand.name not in profiles or node.order != 1:
-                    raise InputError(f'{self.place}: "{self.text}" holds a derivative that no measure has.\nExpected: first derivatives of unknowns.')
+                    raise InputError(
+                        f'{self.place}: "{self.text}" holds a derivative that no measure has.\nExpected: first derivatives of unknowns.'
+                    )
                 return slopes_by_index(profiles[node.operand.name], self.problem.axis) / slopes_by_index(places)
             if node.name == self.problem.coordinate:
                 return places
@@ -122,7 +128,9 @@ class Measure:
         x = self.problem.number(node.location, parameters) if not isinstance(node.location, Number) else node.location.value
         span = places[-1] - places[0]
         if not places[0] - 1e-12 * span <= x <= places[-1] + 1e-12 * span:
-            raise InputError(f'{self.place}: "{self.text}" looks at {x:g}, outside of the domain {places[0]:g} to {places[-1]:g}.\nExpected: a place inside.')
+            raise InputError(
+                f'{self.place}: "{self.text}" looks at {x:g}, outside of the domain {places[0]:g} to {places[-1]:g}.\nExpected: a place inside.'
+            )
         x = min(max(x, float(places[0])), float(places[-1]))
         even = self.problem.axis
         position = index_of(places, x, even)

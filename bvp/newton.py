@@ -108,7 +108,20 @@ def correct(
 
     def ended(why: str) -> Corrected:
         return Corrected(
-            u, parameter, system.tangent.copy(), float(info[1]), not why, why, taken, sweeps, first, norm, int(info[5]), int(info[6]), info[7] == 0.0, float(info[8])
+            u,
+            parameter,
+            system.tangent.copy(),
+            float(info[1]),
+            not why,
+            why,
+            taken,
+            sweeps,
+            first,
+            norm,
+            int(info[5]),
+            int(info[6]),
+            info[7] == 0.0,
+            float(info[8]),
         )
 
     while not reason:
@@ -135,7 +148,11 @@ def correct(
                 break
             damping /= 2.0
             if damping < smallest_damping:
-                outside = "the equations have no finite value near here" if not np.isfinite(after) else "Newton's steps no longer shrink the correction"
+                outside = (
+                    "the equations have no finite value near here"
+                    if not np.isfinite(after)
+                    else "Newton's steps no longer shrink the correction"
+                )
                 reason = f"{outside} (after {taken} steps, correction {norm:.1e} of the state)"
                 break
         if reason:

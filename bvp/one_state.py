@@ -7,7 +7,7 @@ from collections.abc import Mapping
 import numpy as np
 import numpy.typing as npt
 
-from bvp.discretize import Discretization, DiscreteSystem
+from bvp.discretize import DiscreteSystem, Discretization
 from bvp.grid import Grid
 from bvp.newton import Corrected, Scales, correct, held_parameter
 from bvp.problem import Problem
@@ -49,7 +49,16 @@ def solved(system: DiscreteSystem, u: Array, parameter: float) -> Corrected:
     spread = float(np.sqrt(np.mean(u[1:-1] ** 2)))
     scale = max(spread, 1e-3 * _first_step(system, u, parameter), 1e-300)
     scales = Scales(scale, max(abs(parameter), 1.0))
-    return correct(system, u, parameter, held_parameter(system, parameter), scales, tolerance=POLISHED, most_steps=MOST_STEPS, smallest_damping=2.0**-20)
+    return correct(
+        system,
+        u,
+        parameter,
+        held_parameter(system, parameter),
+        scales,
+        tolerance=POLISHED,
+        most_steps=MOST_STEPS,
+        smallest_damping=2.0**-20,
+    )
 
 
 def _first_step(system: DiscreteSystem, u: Array, parameter: float) -> float:

@@ -111,7 +111,9 @@ class Problem:
         tree = parse(text, "plain", self.vocabulary, origin)
         strangers = names_in(tree) - set(self.parameters)
         if strangers:
-            raise ProblemError(f'{origin}: "{text}" holds {sorted(strangers)[0]}, which is no parameter.\nExpected: a number or a formula of parameters.')
+            raise ProblemError(
+                f'{origin}: "{text}" holds {sorted(strangers)[0]}, which is no parameter.\nExpected: a number or a formula of parameters.'
+            )
         return tree
 
     def _guesses(self, guesses: Mapping[str, str]) -> dict[str, Node]:
@@ -159,7 +161,9 @@ class Problem:
                     )
             stated.append(Equation(tree, text, order_of(tree, unknown, f'{origin}: "{text}"')))
         if EXPONENTS[geometry] and left < 0:
-            raise ProblemError(f"{origin}, domain: a {geometry} starts at a radius of {left:g}.\nExpected: a left end of 0 (the axis) or more.")
+            raise ProblemError(
+                f"{origin}, domain: a {geometry} starts at a radius of {left:g}.\nExpected: a left end of 0 (the axis) or more."
+            )
         object.__setattr__(self, "geometry", geometry)
         object.__setattr__(self, "equations", tuple(stated))
         object.__setattr__(self, "notices", tuple(notices))
@@ -247,7 +251,14 @@ class Problem:
         partials = {unknown: source_u, **derivatives}
         given = GivenFunction("given", source, tuple(partials.get(name) for name in arguments), arguments)
         call = f"given({', '.join(arguments)})"
-        return cls(f"laplacian({unknown}) + {call} = 0", unknown, conditions=conditions, parameters=parameters, functions={"given": given}, **keywords)
+        return cls(
+            f"laplacian({unknown}) + {call} = 0",
+            unknown,
+            conditions=conditions,
+            parameters=parameters,
+            functions={"given": given},
+            **keywords,
+        )
 
 
 def order_of(tree: Node, unknown: str, origin: str) -> int:
@@ -290,7 +301,7 @@ def _listed(texts: Texts) -> tuple[str, ...]:
 
 
 def _number(value: object, origin: str) -> float:
-    if isinstance(value, bool) or not isinstance(value, (int, float)) and not hasattr(value, "__float__"):
+    if isinstance(value, bool) or (not isinstance(value, (int, float)) and not hasattr(value, "__float__")):
         raise ProblemError(f"{origin} is {value!r}.\nExpected: a number.")
     number = float(value)  # type: ignore[arg-type]
     if not math.isfinite(number):
@@ -305,9 +316,13 @@ def _where(texts: Mapping[str, str], vocabulary: Vocabulary, origin: str) -> dic
 
     def resolve(name: str, above: tuple[str, ...]) -> Node:
         if name in above:
-            raise ProblemError(f"{origin}, where: {' needs '.join([*above, name])}, a circle.\nExpected: formulas that can be worked out one after the other.")
+            raise ProblemError(
+                f"{origin}, where: {' needs '.join([*above, name])}, a circle.\nExpected: formulas that can be worked out one after the other."
+            )
         if name not in done:
-            put_in = transform(raw[name], lambda node: resolve(node.name, (*above, name)) if isinstance(node, Name) and node.name in raw else None)
+            put_in = transform(
+                raw[name], lambda node: resolve(node.name, (*above, name)) if isinstance(node, Name) and node.name in raw else None
+            )
             done[name] = _bounded(put_in, origin)
         return done[name]
 
@@ -317,7 +332,11 @@ def _where(texts: Mapping[str, str], vocabulary: Vocabulary, origin: str) -> dic
 def _tables(measured: Mapping[str, Any], functions: Mapping[str, GivenFunction]) -> dict[str, Any]:
     from bvp.measured import MeasuredFunction
 
-    made = {name: data if isinstance(data, MeasuredFunction) else MeasuredFunction(name, *data) for name, data in measured.items()} if measured else {}
+    made = (
+        {name: data if isinstance(data, MeasuredFunction) else MeasuredFunction(name, *data) for name, data in measured.items()}
+        if measured
+        else {}
+    )
     return {**made, **functions}
 
 

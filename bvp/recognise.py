@@ -68,7 +68,12 @@ def _radius_power(factors: Sequence[Node], coordinate: str) -> tuple[int, list[N
     for factor in factors:
         if factor == Name(coordinate):
             power += 1
-        elif isinstance(factor, Binary) and factor.operator == "^" and factor.left == Name(coordinate) and factor.right in (Number(1.0), Number(2.0)):
+        elif (
+            isinstance(factor, Binary)
+            and factor.operator == "^"
+            and factor.left == Name(coordinate)
+            and factor.right in (Number(1.0), Number(2.0))
+        ):
             power += int(factor.right.value)  # type: ignore[attr-defined]
         else:
             others.append(factor)

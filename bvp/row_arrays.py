@@ -15,7 +15,9 @@ Array = npt.NDArray[np.float64]
 Functions = Mapping[str, Callable[..., Any]]
 
 
-def leaf_values(u: Array, unknown: str, arrays: Mapping[str, Array], numbers: Mapping[str, float], begin: int, end: int) -> Callable[[Node], Any]:
+def leaf_values(
+    u: Array, unknown: str, arrays: Mapping[str, Array], numbers: Mapping[str, float], begin: int, end: int
+) -> Callable[[Node], Any]:
     """The value of each leaf for the rows begin … end - 1; u and arrays have one entry a node, faces one a face."""
 
     def array_of(name: str) -> Array:

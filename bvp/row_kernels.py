@@ -14,7 +14,10 @@ from bvp.formula import source
 from bvp.formula.tree import Call, Indexed, Name, Node, walk
 
 MARK = "# ---- from here on the text is the same in every generated module ----"
-FUNCTIONS = {name: f"math.{name}" for name in ("exp", "log", "sqrt", "sin", "cos", "tan", "sinh", "cosh", "tanh", "asin", "acos", "atan", "erf", "log1p", "expm1")}
+FUNCTIONS = {
+    name: f"math.{name}"
+    for name in ("exp", "log", "sqrt", "sin", "cos", "tan", "sinh", "cosh", "tanh", "asin", "acos", "atan", "erf", "log1p", "expm1")
+}
 FUNCTIONS |= {"abs": "abs", "min": "min", "max": "max", "sign": "np.sign"}
 SPECIAL = ("cardinal", "cardinal_slope", "fit", "fit_by_drift", "fit_by_slope", "step_le")
 
@@ -34,7 +37,9 @@ from bvp.kernels.jit import kernel
 class Spelling:
     """How the leaves of row trees are spelled in a generated module: u[i+1], rows[3, i], numbers[5]."""
 
-    def __init__(self, unknown: str, array_index: Mapping[str, int], number_index: Mapping[str, int], tables: Mapping[str, tuple[int, int]]) -> None:
+    def __init__(
+        self, unknown: str, array_index: Mapping[str, int], number_index: Mapping[str, int], tables: Mapping[str, tuple[int, int]]
+    ) -> None:
         self.unknown, self.array_index, self.number_index, self.tables = unknown, array_index, number_index, tables
 
     def leaf(self, node: Node) -> str:
@@ -42,7 +47,11 @@ class Spelling:
         if isinstance(node, Indexed):
             if node.offset.denominator == 2:
                 return f"rows[{self.array_index['#faces']}, {_index(int(node.offset - _half(node)))}]"
-            where = f"[{_index(int(node.offset))}]" if node.name == self.unknown else f"[{self.array_index[node.name]}, {_index(int(node.offset))}]"
+            where = (
+                f"[{_index(int(node.offset))}]"
+                if node.name == self.unknown
+                else f"[{self.array_index[node.name]}, {_index(int(node.offset))}]"
+            )
             return ("u" if node.name == self.unknown else "rows") + where
         assert isinstance(node, Name)
         kind, _, name = node.name.partition(":")
@@ -88,7 +97,11 @@ def generated_module(rows: Sequence[Sequence[Node]], spelling: Spelling, hint: s
 
         parts.append(_kernels_text(special))
     parts.append(_function("row", "the equation at an inner node", inner, spelling))
-    for name, what, trees in (("first_row", "the equation at the left end", first), ("left_row", "the left condition", left), ("right_row", "the right condition", right)):
+    for name, what, trees in (
+        ("first_row", "the equation at the left end", first),
+        ("left_row", "the left condition", left),
+        ("right_row", "the right condition", right),
+    ):
         parts.append(_function(name, what, trees, spelling))
     parts.append(END_ROW)
     parts.append(inspect.getsource(sweep).split(MARK)[1])
@@ -117,4 +130,3 @@ def _function(name: str, what: str, trees: Sequence[Node], spelling: Spelling) -
 def _kernels_text(module: ModuleType) -> str:
     text = inspect.getsource(module)
     return text[text.index("@kernel") :]
-

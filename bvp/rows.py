@@ -83,11 +83,15 @@ def rows_of(problem: Problem, scheme: Scheme, along: str, uniform: bool) -> Rows
     for side in (LEFT, RIGHT):
         here = [condition for condition in problem.conditions if side in condition.sides]
         if any(len(condition.sides) > 1 for condition in here):
-            raise ProblemError(f'{here[0].origin}: "{here[0].text}" couples the two ends, which is not built yet.\nExpected: conditions at one end each.')
+            raise ProblemError(
+                f'{here[0].origin}: "{here[0].text}" couples the two ends, which is not built yet.\nExpected: conditions at one end each.'
+            )
         wanted = 0 if side == LEFT and problem.axis else 1
         if len(here) != wanted:
             shown = "; ".join(condition.text for condition in here) or "none"
-            raise ProblemError(f"{problem.origin}, conditions: {len(here)} at the {side} end ({shown}), which is not built yet.\nExpected: one condition at each end.")
+            raise ProblemError(
+                f"{problem.origin}, conditions: {len(here)} at the {side} end ({shown}), which is not built yet.\nExpected: one condition at each end."
+            )
         ends[side] = here[0] if here else None
     right = ends[RIGHT]
     assert right is not None
@@ -129,7 +133,9 @@ def _condition_row(condition: Condition, side: str, scheme: Scheme, problem: Pro
             return Indexed(inside.name, Fraction(0))
         assert isinstance(inside, Prime) and isinstance(inside.operand, Name)
         if inside.order != 1:
-            raise ProblemError(f'{condition.origin}: "{condition.text}" holds a derivative of order {inside.order}.\nExpected: u and u\' in the conditions of a second-order equation.')
+            raise ProblemError(
+                f'{condition.origin}: "{condition.text}" holds a derivative of order {inside.order}.\nExpected: u and u\' in the conditions of a second-order equation.'
+            )
         return scheme.end_derivative(inside.operand.name, problem.equations[0], shape)
 
     tree = transform(condition.tree, change)
@@ -161,7 +167,9 @@ def placement(problem: Problem, scheme: Scheme, uniform: bool) -> Callable[[Node
             return add(left, multiply(length, Indexed(PLACE, node.offset)))
         if isinstance(node, Indexed) and node.name in scheme.weight_powers:
             if left != Number(0.0) and problem.exponent:
-                raise SchemeError(f'the scheme "{scheme.name}" has no weights for a shell whose ends are formulas of parameters.\nUse central or shell-balance there.')
+                raise SchemeError(
+                    f'the scheme "{scheme.name}" has no weights for a shell whose ends are formulas of parameters.\nUse central or shell-balance there.'
+                )
             return multiply(node, Binary("^", length, Number(float(scheme.weight_powers[node.name]))))
         if node in (up(x), down(x)):
             return multiply(length, (up if node == up(x) else down)(PLACE))

@@ -49,7 +49,7 @@ class Pieces:
             if int(path.stem) != number:
                 break
             try:
-                with np.load(path, allow_pickle=False) as archive:
+                with path.open("rb") as opened, np.load(opened, allow_pickle=False) as archive:
                     arrays = {name: archive[name] for name in archive.files}
                 document = json.loads(str(arrays.pop(_DOCUMENT)))
             except Exception:  # a damaged archive can raise nearly anything from zipfile, zlib and numpy

@@ -132,7 +132,9 @@ def checked_range(within: Any, start: float, along: str) -> tuple[float, float]:
     if not lowest < highest:
         raise InputError(f"within = [{lowest:g}, {highest:g}] is empty.\nExpected: the lower value first.")
     if not lowest <= start <= highest:
-        raise InputError(f"the trace starts at {along} = {start:g}, outside of within = [{lowest:g}, {highest:g}].\nStart inside, or widen the range.")
+        raise InputError(
+            f"the trace starts at {along} = {start:g}, outside of within = [{lowest:g}, {highest:g}].\nStart inside, or widen the range."
+        )
     return lowest, highest
 
 

@@ -52,7 +52,9 @@ def closes(start: Point, before: Point, after: Point) -> bool:
     gap_after = inner(after.u - start.u, after.parameter - start.parameter, start.tangent, start.pace, scales)
     if not (gap_before >= 0.0 and gap_after >= 0.0):
         return False
-    step = inner(after.u - before.u, after.parameter - before.parameter, after.u - before.u, after.parameter - before.parameter, scales) ** 0.5
+    step = (
+        inner(after.u - before.u, after.parameter - before.parameter, after.u - before.u, after.parameter - before.parameter, scales) ** 0.5
+    )
     share = gap_before / (gap_before + gap_after) if gap_before + gap_after else 0.5
     state = before.u + share * (after.u - before.u) - start.u
     parameter = before.parameter + share * (after.parameter - before.parameter) - start.parameter

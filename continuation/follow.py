@@ -52,7 +52,9 @@ class Followed:
     reason: str = ""
 
 
-def follow(path: Path, start: Point, rule: StepLength, limits: Limits, detectors: Sequence[Detector], keep: Callable[[Point], Point]) -> Followed:
+def follow(
+    path: Path, start: Point, rule: StepLength, limits: Limits, detectors: Sequence[Detector], keep: Callable[[Point], Point]
+) -> Followed:
     """The branch from a point on, step by step; `keep` sees every accepted point and returns what is stored of it."""
     points = [keep(start)]
     here, length = start, rule.first
@@ -149,5 +151,7 @@ def at_parameter(path: Path, before: Point, after: Point, parameter: float) -> P
     found = path.counted(correct(path.system, guess, parameter, held_parameter(path.system, parameter), before.scales, tolerance=CORRECTED))
     if not found.ok:
         guess, _ = predicted(before, share * (after.arclength - before.arclength))
-        found = path.counted(correct(path.system, guess, parameter, held_parameter(path.system, parameter), before.scales, tolerance=CORRECTED))
+        found = path.counted(
+            correct(path.system, guess, parameter, held_parameter(path.system, parameter), before.scales, tolerance=CORRECTED)
+        )
     return path.point(found, before.arclength + share * (after.arclength - before.arclength), before) if found.ok else None

@@ -24,7 +24,9 @@ def grid_for(grid: str | Grid, intervals: int, problem: Problem) -> Grid:
     if grid == "uniform":
         return Grid(intervals)
     if grid == "adaptive":
-        raise InputError('grid "adaptive" is not built yet.\nExpected: "uniform", or the formula of a map of s, such as "s^2" or "sinh(4*s)/sinh(4)".')
+        raise InputError(
+            'grid "adaptive" is not built yet.\nExpected: "uniform", or the formula of a map of s, such as "s^2" or "sinh(4*s)/sinh(4)".'
+        )
     tree = parse(str(grid), "plain", Vocabulary(unknowns=(), coordinate="s"), f"{problem.origin}, grid")
     return Grid(intervals, _map(tree))
 

@@ -130,7 +130,9 @@ def reach(problem: Problem, *, when: str, along: str | None = None, **keywords: 
     points = tuple(_refined_place(setting, system, place, detector) for place in detector.found)
     notes = list(branch.notes)
     if not points:
-        notes.append(f"{when} is reached nowhere on the branch, which ended: {branch.ended}, at {branch.along} = {branch.parameter[-1]:.6g}.")
+        notes.append(
+            f"{when} is reached nowhere on the branch, which ended: {branch.ended}, at {branch.along} = {branch.parameter[-1]:.6g}."
+        )
     return Reached(when, branch.along, points, branch.complete, tuple(notes), branch)
 
 
@@ -158,7 +160,9 @@ def _refined_place(setting: Setting, system: DiscreteSystem, place: Place, detec
     result = refined(place, system.grid.intervals, find, values, setting.digits or 8, repeat)
     names = [measure.text for measure in setting.measures]
     uncertainty = result.uncertainties[""] if setting.consistency.ok is True else None
-    notes = list(result.notes) + ([] if setting.consistency.ok is True else [f"the value is the scheme's own: {setting.consistency.reason}"])
+    notes = list(result.notes) + (
+        [] if setting.consistency.ok is True else [f"the value is the scheme's own: {setting.consistency.reason}"]
+    )
     state = state_of(on(result.finest_intervals), result.finest.found)
     return ReachedPoint(
         value=result.values[""],
@@ -182,7 +186,13 @@ def _found_again(system: DiscreteSystem, known: Place, intervals: int, even: boo
     assert isinstance(detector, ValueDetector)
     point = known.point
     base = Point(
-        carried(point.u, intervals, even), point.parameter, carried(point.tangent, intervals, even), point.pace, 0.0, point.scales, known.found
+        carried(point.u, intervals, even),
+        point.parameter,
+        carried(point.tangent, intervals, even),
+        point.pace,
+        0.0,
+        point.scales,
+        known.found,
     )
     path = Path(system, point.scales.state, point.scales.parameter)
     distance, step = 0.0, 1e-4

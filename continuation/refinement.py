@@ -89,7 +89,9 @@ def refined(
                 family.found[count] = found
         return None
 
-    grids = sorted({family.coarsest << level for family in families for level in range(LEVELS)}, key=lambda count: abs(np.log(count / intervals)))
+    grids = sorted(
+        {family.coarsest << level for family in families for level in range(LEVELS)}, key=lambda count: abs(np.log(count / intervals))
+    )
     failures = {count: reason for count in grids if (reason := visit(count)) is not None}
     level = LEVELS
     outcome = _extrapolated(families, values, 0.0)
@@ -124,7 +126,9 @@ def _power_of_two(number: int) -> bool:
 Outcome = tuple[dict[str, float], dict[str, float | None], float | None, tuple[Refined, ...]]
 
 
-def _extrapolated(families: Sequence[Family[Feature]], values: Callable[[Feature, int], Mapping[str, float]], floor: float) -> Outcome | None:
+def _extrapolated(
+    families: Sequence[Family[Feature]], values: Callable[[Feature, int], Mapping[str, float]], floor: float
+) -> Outcome | None:
     runs = [family.run() for family in families]
     if any(len(run) < 3 for run in runs):
         return None

@@ -139,7 +139,15 @@ def states_at(problem: Problem, *, at: Mapping[str, float], along: str | None = 
         notes.append(_why_none(branch, name, value, discrete, asked_for.grid.intervals))
     notes.append("only states on the branch traced from its start are listed; others, not connected to it, are not looked for.")
     given = {**others, name: value}
-    return StatesAt("scheme" if discrete else "equation", given, tuple(states), margin, branch.complete and finer is None, tuple(dict.fromkeys(notes)), branch)
+    return StatesAt(
+        "scheme" if discrete else "equation",
+        given,
+        tuple(states),
+        margin,
+        branch.complete and finer is None,
+        tuple(dict.fromkeys(notes)),
+        branch,
+    )
 
 
 def _traced_name(problem: Problem, at: Mapping[str, float]) -> str:
@@ -222,14 +230,18 @@ def _real_state(setting: Setting, system: DiscreteSystem, found: Corrected, note
     if not result.survives:
         taken = values(found, system.grid.intervals)[""]
         text = setting.measures[0].text
-        notes.append(f"a state of the scheme with {text} = {taken:.6g} is left out: it {result.notes[0] if result.notes else 'does not settle'}.")
+        notes.append(
+            f"a state of the scheme with {text} = {taken:.6g} is left out: it {result.notes[0] if result.notes else 'does not settle'}."
+        )
         return None
     names = [measure.text for measure in setting.measures]
     uncertainties = {name: result.uncertainties[name] if setting.consistency.ok is True else None for name in names}
     if setting.consistency.ok is not True:
         notes.append(f"the states are the scheme's own: {setting.consistency.reason}.")
     state = state_of(on(result.finest_intervals), result.finest)
-    return FoundState({name: result.values[name] for name in names}, uncertainties, state.unstable_directions, state.residual, "main", state)
+    return FoundState(
+        {name: result.values[name] for name in names}, uncertainties, state.unstable_directions, state.residual, "main", state
+    )
 
 
 def _finer_grid(branch: Branch, value: float) -> int | str | None:

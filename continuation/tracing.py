@@ -20,7 +20,7 @@ from bvp.problem import Problem
 from bvp.state import State
 from continuation.asked import Asked, Event, asked
 from continuation.follow import COARSE, STOPPED, Detector, Followed, Limits, follow
-from continuation.path import Path, Point
+from continuation.path import Point
 from continuation.records import Branch, TurningPoint
 from continuation.start import first_point, first_state
 from continuation.step_length import StepLength
@@ -114,7 +114,9 @@ def first_turning_point(problem: Problem, along: str | None = None, *, digits: i
 def setting_of(asked_for: Asked, system: DiscreteSystem, size: float = 1.0) -> Setting:
     """What refining needs of a trace."""
     values = {**system.values, asked_for.along: asked_for.start}
-    return Setting(asked_for.of, asked_for.grid, system.values, asked_for.measures, asked_for.digits, consistency(asked_for.of, size, values))
+    return Setting(
+        asked_for.of, asked_for.grid, system.values, asked_for.measures, asked_for.digits, consistency(asked_for.of, size, values)
+    )
 
 
 def traced(asked_for: Asked, extra: tuple[Detector, ...] = (), name: str = "main") -> Branch:
@@ -142,7 +144,13 @@ def traced(asked_for: Asked, extra: tuple[Detector, ...] = (), name: str = "main
 
 
 def _recorded(
-    asked_for: Asked, system: DiscreteSystem, sides: list[tuple[Followed, Recorder]], name: str, effort: tuple[int, int], began: float, compiling: float
+    asked_for: Asked,
+    system: DiscreteSystem,
+    sides: list[tuple[Followed, Recorder]],
+    name: str,
+    effort: tuple[int, int],
+    began: float,
+    compiling: float,
 ) -> Branch:
     """The record of both directions joined: the first one backwards, then the second."""
     points: list[Kept] = []
@@ -187,7 +195,9 @@ def _recorded(
         seconds=max(spent - compiled, 0.0),
         compile_seconds=compiled,
         complete=not interrupted and all(followed.ended != "no smaller step" for followed, _ in sides),
-        notes=tuple(dict.fromkeys([*notes, *(f"turning point {number}: {note}" for number, one in enumerate(turning, 1) for note in one.notes)])),
+        notes=tuple(
+            dict.fromkeys([*notes, *(f"turning point {number}: {note}" for number, one in enumerate(turning, 1) for note in one.notes)])
+        ),
     )
 
 

@@ -9,7 +9,7 @@ import numpy as np
 import numpy.typing as npt
 
 from bvp.consistency import Consistency
-from bvp.discretize import Discretization, DiscreteSystem
+from bvp.discretize import DiscreteSystem, Discretization
 from bvp.grid import Grid
 from bvp.measures import Measure
 from bvp.one_state import state_of
@@ -62,7 +62,9 @@ def turning_point(setting: Setting, located: DiscreteTurning, position: float, b
     system = setting.of.on(setting.grid, setting.values)
     notes: list[str] = []
     if setting.digits is None:
-        return _record(setting, system, located, located.parameter, None, None, (), True, position, branch, located.parameter, {}, {}, notes)
+        return _record(
+            setting, system, located, located.parameter, None, None, (), True, position, branch, located.parameter, {}, {}, notes
+        )
 
     systems: dict[int, DiscreteSystem] = {setting.grid.intervals: system}
 

@@ -59,7 +59,11 @@ _EXPONENTIAL = collected(
         },
     ),
     group(PLANE, {"interval, exponential, turning point, u'(0)": "4"}, exact=True),
-    group("Joseph & Lundgren 1973, Arch. Rat. Mech. Anal. 49:241, from memory; exact", {"cylinder, exponential, turning point": "2"}, exact=True),
+    group(
+        "Joseph & Lundgren 1973, Arch. Rat. Mech. Anal. 49:241, from memory; exact",
+        {"cylinder, exponential, turning point": "2"},
+        exact=True,
+    ),
     group(RECOMPUTED, {"cylinder, exponential, turning point, u(0)": "1.38629436111989061883"}),
     group(
         BALLS,
@@ -71,7 +75,10 @@ _EXPONENTIAL = collected(
         },
     ),
     group(HANDBOOK, {"slab, handbook": "0.88", "cylinder, handbook": "2.00", "sphere, handbook": "3.32"}),
-    group("recomputed; handbooks print 2.52 for the cube, 1.8 % high, and 2.76", {"cube, turning point": "2.4750", "short cylinder, turning point": "2.7658"}),
+    group(
+        "recomputed; handbooks print 2.52 for the cube, 1.8 % high, and 2.76",
+        {"cube, turning point": "2.4750", "short cylinder, turning point": "2.7658"},
+    ),
 )
 
 _COOLED = collected(

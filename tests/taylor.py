@@ -186,7 +186,9 @@ def radial_profile(source: Callable[[Series, Series], Series], exponent: int, ce
     return advance(radial(source, exponent), r, (u, v), end)
 
 
-def radial_until(source: Callable[[Series, Series], Series], exponent: int, centre: Any, value: Callable[..., Any]) -> tuple[Any, list[Any]]:
+def radial_until(
+    source: Callable[[Series, Series], Series], exponent: int, centre: Any, value: Callable[..., Any]
+) -> tuple[Any, list[Any]]:
     """The radius where value(r, u, u') first changes its sign, with u and u' there."""
     r, u, v = from_axis(source, exponent, centre)
     # The first step is halved until the sign has not changed yet.

@@ -17,7 +17,6 @@ import numpy as np
 from bvp.kernels.jit import kernel
 
 
-
 @kernel
 def row(i, u, rows, numbers):
     """A stored row."""

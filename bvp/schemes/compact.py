@@ -84,7 +84,11 @@ def source_form(equation: Equation, unknown: str, problem: Problem) -> tuple[Nod
     marked = transform(equation.tree, lambda node: stand_in if node in operators else None)
     leading = derivative(marked, stand_in)
     source = transform(marked, lambda node: Number(0.0) if node == stand_in else None)
-    held = [node for node in walk(source) if isinstance(node, Prime) or (isinstance(node, Call) and node.function in ("laplacian", "div", "grad"))]
+    held = [
+        node
+        for node in walk(source)
+        if isinstance(node, Prime) or (isinstance(node, Call) and node.function in ("laplacian", "div", "grad"))
+    ]
     strangers = names_in(leading) - set(problem.parameters)
     if held or strangers or leading == Number(0.0):
         shown = write(held[0]) if held else write(leading) if strangers else equation.text

@@ -67,7 +67,9 @@ def split_by_derivatives(tree: Node) -> tuple[Node, Node]:
     """The additive terms with derivatives, and those without (f of the scheme language); 0 where there are none."""
     parts: tuple[list[Node], list[Node]] = ([], [])
     for sign, term in additive_terms(tree):
-        held = any(isinstance(node, Prime) or (isinstance(node, Call) and node.function in ("laplacian", "div", "grad")) for node in walk(term))
+        held = any(
+            isinstance(node, Prime) or (isinstance(node, Call) and node.function in ("laplacian", "div", "grad")) for node in walk(term)
+        )
         parts[0 if held else 1].append(term if sign > 0 else Negative(term))
     return _sum(parts[0]), _sum(parts[1])
 
@@ -95,7 +97,9 @@ def _whole(scheme: Scheme, whole: Node, unknown: str, shape: Shape) -> Node:
         axis = scheme.formula("axis", shape.problem, unknown)
         if axis is not None:
             return difference_of_sides(axis)
-        singular = [node for node in walk(whole) if isinstance(node, Indexed) and node.name == shape.problem.coordinate and node.offset == 0]
+        singular = [
+            node for node in walk(whole) if isinstance(node, Indexed) and node.name == shape.problem.coordinate and node.offset == 0
+        ]
         if singular:
             raise SchemeError(
                 f'{scheme.origin or scheme.name}: "equation" holds {shape.problem.coordinate}[k], which is 0 at the axis.\n'
@@ -150,7 +154,9 @@ def _differenced(scheme: Scheme, tree: Node, unknown: str, shape: Shape) -> Node
     missed = {term for term, _ in pairs} - met
     if scheme.replacements and len(missed) == len({term for term, _ in pairs}):
         shown = ", ".join(f'"{term}"' for term in scheme.replacements)
-        raise SchemeError(f"{scheme.origin or scheme.name}, replace: {shown} stands nowhere in {write(tree)}.\nWrite the term as the equation has it.")
+        raise SchemeError(
+            f"{scheme.origin or scheme.name}, replace: {shown} stands nowhere in {write(tree)}.\nWrite the term as the equation has it."
+        )
     return changed
 
 
@@ -161,7 +167,9 @@ def _primed(scheme: Scheme, node: Prime, shape: Shape) -> Node:
             return standard_or_own_first(scheme, inside.name, shape)
         if node.order == 2:
             return _second(scheme, inside, shape)
-        raise SchemeError(f'"{write(node)}" is a derivative of order {node.order}.\nBuilt so far: first and second derivatives of each unknown.')
+        raise SchemeError(
+            f'"{write(node)}" is a derivative of order {node.order}.\nBuilt so far: first and second derivatives of each unknown.'
+        )
     if inside == Name(problem.coordinate):
         return Number(1.0 if node.order == 1 else 0.0)
     if any(isinstance(part, Prime) or (isinstance(part, Call) and part.function == "grad") for part in walk(inside)):
@@ -224,7 +232,9 @@ def _laplacian(scheme: Scheme, inside: Node, shape: Shape) -> Node:
 def _flux_laplacian(scheme: Scheme, inside: Node, shape: Shape) -> Node:
     problem = shape.problem
     if not isinstance(inside, Name):
-        raise SchemeError(f'the flux of the scheme "{scheme.name}" is one of {problem.unknowns[0]}, not of "{write(inside)}".\nExpected: laplacian of an unknown.')
+        raise SchemeError(
+            f'the flux of the scheme "{scheme.name}" is one of {problem.unknowns[0]}, not of "{write(inside)}".\nExpected: laplacian of an unknown.'
+        )
     if shape.axis:
         axis = scheme.formula("axis", problem, inside.name)
         if axis is not None:
@@ -276,7 +286,9 @@ def _face_flux(scheme: Scheme, flux: Node, side: int, shape: Shape, exponent: in
         return moved if exponent == 0 else over(moved, area)
 
     def change(node: Node) -> Node | None:
-        inside = node.operand if isinstance(node, Prime) else node.arguments[0] if isinstance(node, Call) and node.function == "grad" else None
+        inside = (
+            node.operand if isinstance(node, Prime) else node.arguments[0] if isinstance(node, Call) and node.function == "grad" else None
+        )
         if inside is not None:
             if not isinstance(inside, Name) or inside.name not in problem.unknowns or (isinstance(node, Prime) and node.order != 1):
                 raise SchemeError(f'"{write(node)}" stands inside a flux.\nExpected: first derivatives of unknowns there, such as k*u\'.')

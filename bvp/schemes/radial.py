@@ -53,5 +53,7 @@ class RadialScheme(Scheme):
 
 SHELL_BALANCE = RadialScheme("shell-balance", "conservative: areas of the shells' faces, volumes of the shells", fluxes=SHELL_FLUX)
 RADIAL_EXACT = RadialScheme(
-    "radial-exact", "flux between neighbours exact for the geometry's harmonic functions; the axis cell by its own balance", fluxes=EXACT_FLUX
+    "radial-exact",
+    "flux between neighbours exact for the geometry's harmonic functions; the axis cell by its own balance",
+    fluxes=EXACT_FLUX,
 )

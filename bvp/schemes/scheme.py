@@ -150,14 +150,18 @@ def check_typed(name: str, keys: Mapping[str, object], origin: str) -> None:
             raise SchemeError(f'{origin}: "{key}" is no key of a scheme. {nearest(key, list(KEYS))}')
         if key == "replace":
             if not isinstance(value, Mapping) or not all(isinstance(text, str) for text in value.values()):
-                raise SchemeError(f'{origin}: "replace" is {value!r}.\nExpected: a table of a term for a term, such as {{"u^2" = "u[k]*u[k+1]"}}.')
+                raise SchemeError(
+                    f'{origin}: "replace" is {value!r}.\nExpected: a table of a term for a term, such as {{"u^2" = "u[k]*u[k+1]"}}.'
+                )
         elif not isinstance(value, str):
             raise SchemeError(f'{origin}: "{key}" is {value!r}.\nExpected: a formula in quotes.')
     if not keys:
         raise SchemeError(f'{origin}: the scheme "{name}" has no formula.\nExpected: one of {", ".join(KEYS)}.')
     if "equation" in keys and set(keys) - {"equation", "end", "axis"}:
         extra = sorted(set(keys) - {"equation", "end", "axis"})[0]
-        raise SchemeError(f'{origin}: "equation" is the whole difference equation, and "{extra}" would change a part of it.\nGive one or the other.')
+        raise SchemeError(
+            f'{origin}: "equation" is the whole difference equation, and "{extra}" would change a part of it.\nGive one or the other.'
+        )
     for key in ("volume",):
         if key in keys and "flux" not in keys:
             raise SchemeError(f'{origin}: "{key}" belongs to a "flux", which is missing.\nGive both, or neither.')

@@ -62,7 +62,7 @@ def _wordings(counts: Sequence[tuple[int, bool]]) -> list[str]:
     """How many states, or how many at least, there are on stretches that share a label: the longest wording first."""
     least, most = min(counts)[0], max(counts)[0]
     if least < most:
-        return [f"{least}–{most} states", f"{least}–{most}"]  # noqa: RUF001
+        return [f"{least}–{most} states", f"{least}–{most}"]
     if any(or_more for _, or_more in counts):
         return [f"{least} or more states", f"{least} or more", f"≥{least}"]
     return [f"{least} state" + "s" * (least != 1), f"{least}"]

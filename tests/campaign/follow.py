@@ -10,7 +10,7 @@ import numpy.typing as npt
 import sympy
 
 from tests.campaign.collocation import Collocated, Turning, sharpened
-from tests.campaign.model import X, XI, Model
+from tests.campaign.model import XI, Model, X
 
 Array = npt.NDArray[np.float64]
 LADDER = (24, 36, 54, 80, 120, 180)

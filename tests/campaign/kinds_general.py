@@ -82,7 +82,9 @@ def source_of_place(rng: Generator, turn: int) -> Draft:
     weight, parameters = weights(rng, turn)
     geometry = GEOMETRIES[turn % 3]
     left = U if turn % 2 else V
-    return draft("source depends on x", "laplacian", LAM * weight * source.expression, (left, U), source.parameters | parameters, geometry=geometry)
+    return draft(
+        "source depends on x", "laplacian", LAM * weight * source.expression, (left, U), source.parameters | parameters, geometry=geometry
+    )
 
 
 def convection(rng: Generator, turn: int) -> Draft:
@@ -94,7 +96,15 @@ def convection(rng: Generator, turn: int) -> Draft:
     geometry = "slab" if turn % 5 else GEOMETRIES[1 + turn // 5 % 2]
     form = form if geometry == "slab" or turn % 2 else VELOCITY * X
     parameters = source.parameters | {"vel": velocity}
-    return draft("convection", "plain" if geometry == "slab" and turn % 2 == 0 else "laplacian", LAM * source.expression + form * V, (U, U), parameters, geometry=geometry, along_unit=4.0)
+    return draft(
+        "convection",
+        "plain" if geometry == "slab" and turn % 2 == 0 else "laplacian",
+        LAM * source.expression + form * V,
+        (U, U),
+        parameters,
+        geometry=geometry,
+        along_unit=4.0,
+    )
 
 
 def unequal_ends(rng: Generator, turn: int) -> Draft:
@@ -124,7 +134,14 @@ def nonlinear_ends(rng: Generator, turn: int) -> Draft:
     if turn % 3 == 2:
         reaction = V - LAM * source.expression
         sink = {"a": number(rng, 0.2, 3.0)}
-        return draft("nonlinear conditions", "laplacian", -A * U, (U if geometry == "slab" else V, reaction), source.parameters | sink, geometry=geometry)
+        return draft(
+            "nonlinear conditions",
+            "laplacian",
+            -A * U,
+            (U if geometry == "slab" else V, reaction),
+            source.parameters | sink,
+            geometry=geometry,
+        )
     end, extra = ((radiating, sigma), (growing, sigma | {"a": number(rng, 0.1, 1.5)}))[turn % 2]
     return draft("nonlinear conditions", "laplacian", LAM * source.expression, (V, end), source.parameters | extra, geometry=geometry)
 
@@ -181,7 +198,9 @@ def strong_convection(rng: Generator, turn: int) -> Draft:
     source = smooth(rng, turn)
     velocity = number(rng, 8.0, 35.0) * (-1 if turn % 2 else 1)
     unit = float(f"{abs(velocity):.2g}")
-    return draft("strong convection", "plain", LAM * source.expression + VELOCITY * V, (U, U), source.parameters | {"vel": velocity}, along_unit=unit)
+    return draft(
+        "strong convection", "plain", LAM * source.expression + VELOCITY * V, (U, U), source.parameters | {"vel": velocity}, along_unit=unit
+    )
 
 
 KINDS = {

@@ -27,7 +27,9 @@ def exponential_interval(rng: Generator, turn: int) -> Draft:
 
     form = "plain" if turn % 2 else "laplacian"
     size = 4 / (right - left) ** 2
-    return draft("exponential, interval", form, LAM * sympy.exp(U), (U, U), {}, ends=(left, right), along_unit=float(f"{size:.2g}"), closed=closed)
+    return draft(
+        "exponential, interval", form, LAM * sympy.exp(U), (U, U), {}, ends=(left, right), along_unit=float(f"{size:.2g}"), closed=closed
+    )
 
 
 def exponential_cooled_slab(rng: Generator, turn: int) -> Draft:
@@ -39,7 +41,16 @@ def exponential_cooled_slab(rng: Generator, turn: int) -> Draft:
         return [cooled_slab(mpf(bi) * mpf(width)) / mpf(width) ** 2]
 
     size = float(f"{min(1.0, bi * width) / width**2:.2g}")
-    return draft("exponential, cooled slab", "laplacian", LAM * sympy.exp(U), (V, V + BI * U), {"Bi": bi}, ends=(0, width), along_unit=size, closed=closed)
+    return draft(
+        "exponential, cooled slab",
+        "laplacian",
+        LAM * sympy.exp(U),
+        (V, V + BI * U),
+        {"Bi": bi},
+        ends=(0, width),
+        along_unit=size,
+        closed=closed,
+    )
 
 
 def exponential_cooled_cylinder(rng: Generator, turn: int) -> Draft:

@@ -21,7 +21,17 @@ def length(rng: Generator, turn: int) -> Draft:
     rate = number(rng, 0.3, 3.0)
     parameters = source.parameters | bi | {"lam": rate}
     end = V + BI * U if turn % 2 else U
-    return draft("along a length", "laplacian", LAM * source.expression, (V, end), parameters, ends=(0, "L"), geometry=geometry, along="L", start=0.05)
+    return draft(
+        "along a length",
+        "laplacian",
+        LAM * source.expression,
+        (V, end),
+        parameters,
+        ends=(0, "L"),
+        geometry=geometry,
+        along="L",
+        start=0.05,
+    )
 
 
 def cooling(rng: Generator, turn: int) -> Draft:
@@ -79,7 +89,9 @@ def coefficient(rng: Generator, turn: int) -> Draft:
     geometry = GEOMETRIES[turn // 2 % 3]
     strength = float(f"{number(rng, 0.4, 0.7) * CRITICAL[turn // 2 % 3]:.4g}")
     weight = 1 + A * X**2
-    return draft("along a coefficient", "laplacian", LAM * weight * sympy.exp(U), (V, U), {"lam": strength}, geometry=geometry, along="a", start=0.0)
+    return draft(
+        "along a coefficient", "laplacian", LAM * weight * sympy.exp(U), (V, U), {"lam": strength}, geometry=geometry, along="a", start=0.0
+    )
 
 
 def ignition_and_extinction(rng: Generator, turn: int) -> Draft:

@@ -10,15 +10,12 @@ import sys
 import time
 import zlib
 from collections.abc import Callable
-from typing import Any
 
 import numpy as np
-import sympy
-from mpmath import mp, mpf
+from mpmath import mp
 
 from tests.campaign import kinds_general, kinds_known, kinds_parameters
 from tests.campaign.draft import Draft
-from tests.campaign.model import U
 from tests.campaign.statement import Statement, write
 from tests.campaign.truths import NotAgreed, statement_of
 

@@ -98,7 +98,13 @@ class Model:
         lam, found = self.parameter, []
         for one in self.scaled:
             first = [sympy.diff(one, by) for by in (U, P, lam)]
-            second = [sympy.diff(first[0], U), sympy.diff(first[0], P), sympy.diff(first[1], P), sympy.diff(first[0], lam), sympy.diff(first[1], lam)]
+            second = [
+                sympy.diff(first[0], U),
+                sympy.diff(first[0], P),
+                sympy.diff(first[1], P),
+                sympy.diff(first[0], lam),
+                sympy.diff(first[1], lam),
+            ]
             found.append([one, *first, *second])
         return found
 

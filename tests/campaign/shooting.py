@@ -13,7 +13,7 @@ import numpy.typing as npt
 import sympy
 from scipy.integrate import solve_ivp
 
-from tests.campaign.model import EXPONENTS, Q, XI, Model, P, U, W
+from tests.campaign.model import EXPONENTS, XI, Model, P, Q, U, W
 
 Array = npt.NDArray[np.float64]
 SIDE = sympy.Symbol("_side", real=True)
@@ -34,7 +34,9 @@ class Shooting:
         regular = sympy.simplify(residual - W - radial) if s else residual - W
         field = -(regular + radial)
         arguments = [XI, U, P, *model.symbols]
-        self.field = sympy.lambdify([*arguments, SIDE], [field, sympy.diff(field, U), sympy.diff(field, P)], modules=["math", "scipy"], cse=True)
+        self.field = sympy.lambdify(
+            [*arguments, SIDE], [field, sympy.diff(field, U), sympy.diff(field, P)], modules=["math", "scipy"], cse=True
+        )
         self.right = sympy.lambdify(arguments, [right, sympy.diff(right, U), sympy.diff(right, P)], modules=["math", "scipy"])
         u, p, x = self._start(regular, left, s)
         start = [u, p, sympy.diff(u, Q), sympy.diff(p, Q)]
@@ -107,7 +109,7 @@ class Shooting:
             change = np.linalg.solve(matrix, -now)
             at = at + change
             size = float(np.max(np.abs(change)))
-            if size < 1e-9 and abs(change[1]) < 3e-14 * max(abs(at[1]), 1e-3) or (size < 1e-8 and size > 0.3 * last):
+            if (size < 1e-9 and abs(change[1]) < 3e-14 * max(abs(at[1]), 1e-3)) or (size < 1e-8 and size > 0.3 * last):
                 return float(at[1])
             last = size
         raise ArithmeticError("shooting did not settle")

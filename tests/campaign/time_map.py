@@ -110,7 +110,12 @@ class TimeMap:
 
 
 def turning_point(
-    functions: tuple[Function, Function], exact: tuple[Function, Function], width: Fraction, bi: float | None, kinks: tuple[float, ...], most: float
+    functions: tuple[Function, Function],
+    exact: tuple[Function, Function],
+    width: Fraction,
+    bi: float | None,
+    kinks: tuple[float, ...],
+    most: float,
 ) -> tuple[Any, Any, Any]:
     """(lam, m, uncertainty) of the first maximum of lam(m) on (0, most): found in floats, finished with 30 digits.
 

@@ -85,7 +85,9 @@ def statement_of(draft: Draft, name: str) -> Statement:
     model = draft.model
     if draft.energy is not None and draft.energy.kinks:
         return kinked_statement(draft, name)
-    followed = follow(model, float(draft.trace["start"]), str(draft.trace["direction"]), draft.wanted, beyond=60, n=54 if not draft.collocation else 36)
+    followed = follow(
+        model, float(draft.trace["start"]), str(draft.trace["direction"]), draft.wanted, beyond=60, n=54 if not draft.collocation else 36
+    )
     turnings = [turning for _, turning in followed.turnings]
     if draft.closed is not None:
         with mp.workdps(DIGITS):
@@ -118,7 +120,9 @@ def kinked_statement(draft: Draft, name: str) -> Statement:
     assert draft.energy is not None
     truth = by_energy(draft.energy, {key: value for key, value in draft.model.parameters.items() if key != draft.model.along})
     near = float(truth.value) / draft.model.along_unit
-    value = Shooting(draft.model, draft.energy.kinks[0]).turning_point(float(truth.measured) * 1.0003, near * 0.9997) * draft.model.along_unit
+    value = (
+        Shooting(draft.model, draft.energy.kinks[0]).turning_point(float(truth.measured) * 1.0003, near * 0.9997) * draft.model.along_unit
+    )
     origins = ("quadrature of the energy integral", "shooting")
     return stated(draft, name, [truth], origins, agreed([truth.value], [mpf(value)], *origins), None)
 
@@ -131,7 +135,9 @@ def agreed(first: list[Any], second: list[Any], origin: str, other: str) -> floa
     return agreement
 
 
-def stated(draft: Draft, name: str, truths: list[Truth], origins: tuple[str, str], agreement: float, states: TrueStates | None) -> Statement:
+def stated(
+    draft: Draft, name: str, truths: list[Truth], origins: tuple[str, str], agreement: float, states: TrueStates | None
+) -> Statement:
     """The record of a draft and its truth."""
     measure = f"{'min' if draft.smallest else 'max'}({draft.problem['unknowns'][0]})"
     points = tuple(TrueTurningPoint(mp.nstr(one.value, 22), float(one.uncertainty), text(one.measured, 17)) for one in truths)

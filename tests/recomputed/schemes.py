@@ -154,7 +154,12 @@ def values() -> dict[str, Any]:
     found["fourth order, interval, N 32, turning point"] = interval(fourth_order, 32)
     # N = 3, u1 = u2 = u: u = lam e^u/9; the antisymmetric variation (1, -1) vanishes where 3 = lam e^u/9, so u = 3.
     found["central, interval, N 3, pitchfork"] = 27 / e**3
-    for name, rule, power in (("central", central, 2), ("fitted", fitted, 2), ("logarithmic source", logarithmic, 2), ("fourth order", fourth_order, 4)):
+    for name, rule, power in (
+        ("central", central, 2),
+        ("fitted", fitted, 2),
+        ("logarithmic source", logarithmic, 2),
+        ("fourth order", fourth_order, 4),
+    ):
         found[f"{name}, interval, error constant, h^{power}"] = constant(partial(interval, rule), truth, power)
     # lam of a scheme with the denominator phi is lam h^2/phi of the central one.
     for name, phi in (("2 ln cosh h", log_cosh), ("4 sinh^2(h/2)", hyperbolic)):
