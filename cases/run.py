@@ -19,23 +19,17 @@ WatchCall = Callable[[Any], bool]
 INTERRUPTED = "interrupted"
 
 
-def trace(case: Case, watch: WatchCall | None = None, **more: Any) -> Traced:
-    """Trace a case and hold the result against what is published about it; `more` goes to `continuation.trace`."""
+def trace(case: Case, watch: WatchCall | None = None) -> Traced:
+    """Trace a case and hold the result against what is published about it."""
     import continuation
 
     problem = problem_of(case)
     keywords = trace_keywords(case, problem)
-    branch: Branch = continuation.trace(problem, watch=watch, **keywords, **more)
+    branch: Branch
+    branch, found = continuation.traced_with_states(problem, values_needed(case), watch=watch, **keywords)
     branch = replace(branch, units=case.units, labels=case.labels)
     notes = [*problem.notices, *branch.notes]
-    for number, point in enumerate(branch.turning_points, start=1):
-        notes += [f"turning point {number}: {note}" for note in point.notes]
-    states: dict[float, Any] = {}
-    if branch.complete:
-        for value in values_needed(case):
-            found = continuation.states_at(problem, at=value, **_for_states(keywords, value))
-            states[value] = found.states
-            notes += [f"at {along_of(case)} = {value:g}: {note}" for note in found.notes]
+    states = {value: at_value.states for value, at_value in found.items()} if branch.complete else {}
     compared = hold_against(case, branch.turning_points, states)
     reason = "" if branch.complete else _reason(branch.ended, branch.notes)
     return Traced(case, (branch,), compared, _once(notes), branch.complete, reason)
@@ -53,9 +47,9 @@ def solve(case: Case, at: Mapping[str, float], *, discrete: bool = False, watch:
     # The traced parameter's start stays the case's: the branch is followed from there to the value asked for.
     problem = problem_of(case)
     keywords = _for_states(trace_keywords(case, problem), value)
-    found = continuation.states_at(problem, at=value, discrete=discrete, watch=watch, **keywords)
+    found = continuation.states_at(problem, at={along: value}, discrete=discrete, watch=watch, **keywords)
     notes = _once([*problem.notices, *found.notes])
-    found = replace(found, at={**case.parameters, along: value}) if not isinstance(found.at, Mapping) else found
+    found = replace(found, at={**case.parameters, along: value})
     return Solved(case, found, notes, found.complete, "" if found.complete else _reason("", found.notes))
 
 

@@ -15,6 +15,7 @@ _PLACES = {
     "turning_point": ("continuation.tracing", "first_turning_point"),
     "Branch": ("continuation.records", "Branch"),
     "TurningPoint": ("continuation.records", "TurningPoint"),
+    "traced_with_states": ("continuation.states", "traced_with_states"),
     "states_at": ("continuation.states", "states_at"),
     "reach": ("continuation.reaching", "reach"),
 }

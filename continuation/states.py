@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Any
 
@@ -17,7 +17,7 @@ from bvp.one_state import solved, state_of
 from bvp.problem import Problem
 from bvp.resample import carried
 from bvp.state import State
-from continuation.asked import asked
+from continuation.asked import Asked, asked
 from continuation.follow import at_parameter
 from continuation.path import Path, Point
 from continuation.records import Branch, TurningPoint
@@ -117,6 +117,29 @@ def states_at(problem: Problem, *, at: Mapping[str, float], along: str | None = 
     finer = None if discrete else _finer_grid(branch, value)
     if finer is not None and not isinstance(finer, str):
         return states_at(problem, at=at, along=name, **{**keywords, "intervals": finer})
+    return _answer(asked_for, branch, crossings, {**others, name: value}, discrete, finer)
+
+
+def traced_with_states(problem: Problem, values: Sequence[float], **keywords: Any) -> tuple[Branch, dict[float, StatesAt]]:
+    """A branch, and the states of the equation on it at given values of its parameter, from one trace; keywords as for `trace`."""
+    asked_for = asked(problem, **keywords)
+    crossings = {float(value): Crossings(float(value)) for value in values}
+    branch = traced(asked_for, tuple(crossings.values()))
+    found = {}
+    for value, at_value in crossings.items():
+        finer = _finer_grid(branch, value)
+        if finer is None or isinstance(finer, str):
+            found[value] = _answer(asked_for, branch, at_value, {branch.along: value}, False, finer)
+        else:
+            found[value] = states_at(problem, at={branch.along: value}, **{**keywords, "intervals": finer})
+    return branch, found
+
+
+def _answer(
+    asked_for: Asked, branch: Branch, crossings: Crossings, at: Mapping[str, float], discrete: bool, undecided: str | None
+) -> StatesAt:
+    """The states at a value from the discrete ones that a trace met there."""
+    name, value = branch.along, crossings.value
     system = asked_for.of.on(asked_for.grid, {**asked_for.problem.parameters, name: value})
     found = _distinct(system, [*(_start_state(system, asked_for.start, value)), *crossings.found])
     setting = setting_of(asked_for, system)
@@ -132,19 +155,17 @@ def states_at(problem: Problem, *, at: Mapping[str, float], along: str | None = 
             states.append(state)
     first = asked_for.measures[0].text
     states.sort(key=lambda one: one.measures[first])
-    margin = _margin(branch, value, discrete)
-    if finer is not None:
-        notes.append(finer)
+    if undecided is not None:
+        notes.append(undecided)
     elif not states:
         notes.append(_why_none(branch, name, value, discrete, asked_for.grid.intervals))
     notes.append("only states on the branch traced from its start are listed; others, not connected to it, are not looked for.")
-    given = {**others, name: value}
     return StatesAt(
         "scheme" if discrete else "equation",
-        given,
+        at,
         tuple(states),
-        margin,
-        branch.complete and finer is None,
+        _margin(branch, value, discrete),
+        branch.complete and undecided is None,
         tuple(dict.fromkeys(notes)),
         branch,
     )
