@@ -16,7 +16,7 @@ from bvp.newton import Border, Corrected, Scales, correct
 
 Array = npt.NDArray[np.float64]
 
-# The share of the largest parameter met so far below which its relative change no longer counts as a distance: a branch
+# The share of the way travelled below which a relative change of the parameter no longer counts as a distance: a branch
 # that dives to a millionth is then followed by its state, and one that crosses zero is not slowed down on its way.
 PARAMETER_FLOOR = 0.02
 STATE_FLOOR = 1e-3
@@ -63,21 +63,28 @@ def border_through(point: Point, distance: float) -> Border:
 
 
 class Path:
-    """The branch of one discrete system that is being followed; holds the least and the largest sizes that count."""
+    """The branch of one discrete system that is being followed, and how far it has come from where it began."""
 
-    def __init__(self, system: DiscreteSystem, least_state: float, least_parameter: float) -> None:
+    def __init__(self, system: DiscreteSystem, u: Array, parameter: float, first: Scales) -> None:
         self.system = system
-        self.least_state, self.least_parameter = least_state, least_parameter
-        self.largest_state = self.largest_parameter = 0.0
+        self.began = (u, parameter)
+        self.travelled = first
+        # A branch that begins at nothing has no smaller size than its first answer; one that does not may shrink by decades.
+        self.least = Scales(0.0 if np.any(u[1:-1]) else first.state, 0.0 if parameter else first.parameter)
         self.steps = self.sweeps = 0
 
     def scales_at(self, u: Array, parameter: float) -> Scales:
-        """The sizes of state and parameter here, with floors from the largest so far."""
-        size = float(np.sqrt(np.dot(u[1:-1], u[1:-1]) / (u.size - 2)))
-        self.largest_state = max(self.largest_state, size)
-        self.largest_parameter = max(self.largest_parameter, abs(parameter))
-        state = max(size, self.least_state, STATE_FLOOR * self.largest_state)
-        return Scales(state, max(abs(parameter), self.least_parameter, PARAMETER_FLOOR * self.largest_parameter))
+        """The sizes of state and parameter here: the way from the beginning, or their own values where these are less."""
+        nodes = u.size - 2
+        away = (u - self.began[0])[1:-1]
+        state = max(self.travelled.state, float(np.sqrt(np.dot(away, away) / nodes)))
+        change = max(self.travelled.parameter, abs(parameter - self.began[1]))
+        self.travelled = Scales(state, change)
+        size = float(np.sqrt(np.dot(u[1:-1], u[1:-1]) / nodes))
+        return Scales(
+            max(min(size, state), STATE_FLOOR * state, self.least.state),
+            max(min(abs(parameter), change), PARAMETER_FLOOR * change, self.least.parameter),
+        )
 
     def counted(self, found: Corrected) -> Corrected:
         """Newton's effort added to the account."""

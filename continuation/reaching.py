@@ -194,7 +194,7 @@ def _found_again(system: DiscreteSystem, known: Place, intervals: int, even: boo
         point.scales,
         known.found,
     )
-    path = Path(system, point.scales.state, point.scales.parameter)
+    path = Path(system, base.u, base.parameter, point.scales)
     distance, step = 0.0, 1e-4
     last: tuple[float, float] | None = None
     for _ in range(MOST_SECANTS):

@@ -6,13 +6,14 @@ import numpy as np
 import numpy.typing as npt
 
 from bvp.discretize import DiscreteSystem
-from bvp.newton import Corrected
+from bvp.newton import Corrected, Scales
 from bvp.one_state import solved
 from continuation.path import Path, Point
 
 Array = npt.NDArray[np.float64]
 
 MOST_TRIALS = 60
+FARTHEST = 1e12  # where no change of the tangent is seen, the end of looking for it
 BENT = 0.1  # relative change of the tangent that is looked for: a parameter that moves so far shows its own size
 
 
@@ -24,24 +25,22 @@ def first_state(system: DiscreteSystem, parameter: float, guess: Array | None) -
 def first_point(system: DiscreteSystem, found: Corrected, sign: float) -> tuple[Path, Point]:
     """The path with its first point, its sizes read off the branch itself.
 
-    Where the start is at 0 nothing there says what a large parameter is: the change of the parameter over which the
-    tangent of the state turns by a tenth does.
+    The first sizes are the change of the parameter over which the tangent of the state turns by a tenth, and the state's
+    answer to it: a temperature of 300 that answers by 5 degrees is followed by degrees.
     """
-    size = float(np.sqrt(np.mean(found.u[1:-1] ** 2)))
     slope = found.tangent / found.pace if found.pace else found.tangent
     steepness = float(np.sqrt(np.mean(slope[1:-1] ** 2)))
-    reach = abs(found.parameter)
-    if reach == 0.0 and found.pace and steepness > 0.0:
-        reach = _reach(system, found, slope, steepness, sign)
-    reach = reach or 1.0
-    path = Path(system, 0.0 if size > 0.0 else steepness * reach or 1.0, 0.0 if found.parameter else reach)
+    moves = found.pace != 0.0 and steepness > 0.0
+    reach = _reach(system, found, slope, steepness, sign) if moves else abs(found.parameter) or 1.0
+    path = Path(system, found.u, found.parameter, Scales(steepness * reach or 1.0, reach))
     path.counted(found)
     return path, path.point(found, 0.0, None, sign)
 
 
 def _reach(system: DiscreteSystem, found: Corrected, slope: Array, steepness: float, sign: float) -> float:
-    """How far the parameter goes from 0 until the state's answer to it changes by a tenth."""
-    move = 1.0
+    """How far the parameter goes until the state's answer to it changes by a tenth; its own value at most, where that is not 0."""
+    most = abs(found.parameter) or np.inf
+    move = 1.0 if most == np.inf else 0.1 * most
     best = 0.0
     for _ in range(MOST_TRIALS):
         parameter = found.parameter + sign * move
@@ -52,12 +51,9 @@ def _reach(system: DiscreteSystem, found: Corrected, slope: Array, steepness: fl
             bent = float(np.sqrt(np.mean((other - slope)[1:-1] ** 2))) / steepness
         if bent <= BENT:
             best = move
-            if bent > BENT / 4.0 or move > 1e12:
+            if bent > BENT / 4.0 or move >= min(most, FARTHEST):
                 return move
-            if bent < 1e-12:
-                move *= 100.0
-            else:
-                move *= min(max(0.8 * BENT / bent, 1.5), 100.0)
+            move = min(move * (100.0 if bent < 1e-12 else min(max(0.8 * BENT / bent, 1.5), 100.0)), most)
         else:
             if best:
                 return best

@@ -96,7 +96,7 @@ def near(system: DiscreteSystem, u: Array, parameter: float, null: Array, curvat
 
     Returns a sentence where Newton's method or the secants do not end.
     """
-    path = Path(system, scales.state, scales.parameter)
+    path = Path(system, u, parameter, scales)
     direction = null / norm_of(null, 0.0, scales)
     base = Point(u, parameter, direction, 0.0, 0.0, scales, None)  # type: ignore[arg-type]
     guess = (u, parameter)

@@ -41,8 +41,10 @@ def pieces_of(branch: Branch, measure: str, log_parameter: bool = False, log_mea
 
     On a logarithmic axis the points that are not positive are left out.
     """
-    arclength, parameter, _ = _vertices(branch)
+    arclength, parameter, turning = _vertices(branch)
     values = np.interp(arclength, branch.arclength, branch.measure(measure))
+    known = [np.nan if point is None else point.measures.get(measure, np.nan) for point in turning]
+    values = np.where(np.isfinite(known), known, values)
     keep = np.isfinite(parameter) & np.isfinite(values)
     keep &= (parameter > 0) | (not log_parameter)
     keep &= (values > 0) | (not log_measure)
@@ -53,8 +55,11 @@ def pieces_of(branch: Branch, measure: str, log_parameter: bool = False, log_mea
     ends, unstable = _stability(branch)
     cuts = np.concatenate([[-np.inf], ends, [np.inf]])
     fine = np.unique(np.concatenate([_subdivided(arclength), ends[(ends > arclength[0]) & (ends < arclength[-1])]]))
-    drawn_parameter = _interpolated(arclength, parameter, fine, log_parameter)
-    drawn_measure = _interpolated(arclength, values, fine, log_measure)
+    # The curve runs smoothly by its length on the paper, which the arclength of high-dimensional states may have little to do with.
+    chords = _chords(parameter, values, log_parameter, log_measure)
+    along = np.interp(fine, arclength, chords)
+    drawn_parameter = _interpolated(chords, parameter, along, log_parameter)
+    drawn_measure = _interpolated(chords, values, along, log_measure)
     pieces = []
     for first, last, count in zip(cuts[:-1], cuts[1:], unstable, strict=True):
         inside = (fine >= first) & (fine <= last)
@@ -155,6 +160,14 @@ def _subdivided(knots: Array) -> Array:
     steps = max(1, min(STEPS_BETWEEN_POINTS, ENOUGH_VERTICES // knots.size))
     fractions = np.arange(steps) / steps
     return np.append((knots[:-1, None] + np.diff(knots)[:, None] * fractions).ravel(), knots[-1])
+
+
+def _chords(parameter: Array, values: Array, log_parameter: bool, log_measure: bool) -> Array:
+    """The length of the polygon through the points up to each, both axes taken as one unit long."""
+    squares = np.zeros(parameter.size - 1)
+    for shown in (np.log(parameter) if log_parameter else parameter, np.log(values) if log_measure else values):
+        squares += (np.diff(shown) / (np.ptp(shown) or 1.0)) ** 2
+    return np.append(0.0, np.cumsum(np.maximum(np.sqrt(squares), 1e-12)))
 
 
 def _interpolated(knots: Array, values: Array, wanted: Array, logarithmic: bool) -> Array:
