@@ -101,12 +101,14 @@ def _(result: ReachedMeasure) -> dict[str, Any]:
         "when": result.when,
         "points": [
             {
-                "branch": getattr(point, "branch", "main"),
+                "branch": result.found.branch.name,
                 "value": point.value,
                 "uncertainty": point.uncertainty,
                 "measures": point.measures,
+                "unstable_directions": point.unstable_directions,
+                "order": point.order,
                 "refinement": _refinement(point),
-                "on_branch_at": point.on_branch_at,
+                "survives": point.survives,
             }
             for point in result.found.points
         ],

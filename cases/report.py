@@ -86,11 +86,14 @@ def _(result: ReachedMeasure) -> Lines:
             [
                 _cell(point.value, point.uncertainty),
                 *(significant(point.measures[measure]) for measure in measures),
-                getattr(point, "branch", "main"),
+                _count(point.unstable_directions),
+                result.found.branch.name,
             ]
             for point in result.found.points
         ]
-        yield from table([head_of_name(case, along), *(head_of_measure(case, measure) for measure in measures), "branch"], rows)
+        yield from table(
+            [head_of_name(case, along), *(head_of_measure(case, measure) for measure in measures), "unstable directions", "branch"], rows
+        )
     yield from _notes(case, result.notes)
 
 
@@ -211,13 +214,19 @@ def _published(result: Traced) -> Lines:
         yield f"  Values in {case.unit(_along(case))} unless a measure is named."
 
 
-def _margin(case: Case, margin: Any) -> Lines:
-    if isinstance(margin, Mapping) and margin:
-        yield ""
-        yield "Margin to the nearest turning point"
-        for name, value in margin.items():
-            shown = significant(value, 8) if isinstance(value, float) else str(value)
-            yield f"  {name.replace('_', ' ')}: {shown}"
+def _margin(case: Case, margin: Mapping[str, Any]) -> Lines:
+    """How far the parameter is from the nearest turning point."""
+    if not margin:
+        return
+    along = _along(case)
+    unit = f" {case.unit(along)}" if case.unit(along) else ""
+    share = "" if margin["share"] is None else f", {significant(100 * abs(margin['share']), 3)} % of it"
+    way = "beyond" if margin["past"] else "short of"
+    yield ""
+    yield from wrapped(
+        f"This is {significant(abs(margin['distance']), 4)}{unit} {way} the turning point at {along} = "
+        f"{_cell(margin['turning_point'], margin['uncertainty'])}{unit}{share}."
+    )
 
 
 def _notes(case: Case, notes: Sequence[str]) -> Lines:

@@ -7,17 +7,20 @@ reached are three of them. Adding one touches its own file and the list it is pa
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from typing import Protocol
 
 import numpy as np
 
-from bvp.newton import correct, held_parameter
+from continuation.crossing import crossings, distance_of
 from continuation.detect import MOST_HALVINGS, closes, may_dip
-from continuation.path import CORRECTED, Path, Point, predicted
+from continuation.path import Path, Point
+from continuation.resolution import resolves, roughness
 from continuation.step_length import StepLength
 
-ROUGH = 0.3  # second difference over the range of the state, beyond which a peak stands on one node and means nothing
+ROUGH = 0.5  # roughness from which on a finer grid is asked whether the state is real
+ROUGHER = 1.5  # and how much rougher it has to get after a good answer, before it is asked again at once,
+POINTS_BETWEEN = 4  # or after so many points
 WITHIN = "edge of the range"
 CLOSED = "closed loop"
 STUCK = "no smaller step"
@@ -58,7 +61,7 @@ def follow(
     """The branch from a point on, step by step; `keep` sees every accepted point and returns what is stored of it."""
     points = [keep(start)]
     here, length = start, rule.first
-    reason = ""
+    suspicious, again = ROUGH, 0
     while True:
         if len(points) >= limits.longest:
             return Followed(points, LONGEST)
@@ -76,20 +79,14 @@ def follow(
                 return Followed(points, ended)
         if edge is not None:
             return Followed(points, WITHIN)
-        if roughness(following.u) > ROUGH:
-            return Followed(points, COARSE)
+        rough = roughness(following.u)
+        if rough > suspicious or (rough > ROUGH and len(points) >= again):
+            if not resolves(path, following):
+                return Followed(points, COARSE)
+            suspicious, again = ROUGHER * rough, len(points) + POINTS_BETWEEN
         if len(points) > 6 and closes(start, here, following):
             return Followed(points, CLOSED)
         here = following
-
-
-def roughness(u: np.ndarray) -> float:  # type: ignore[type-arg]
-    """The largest second difference of nodal values over their range: small where a grid resolves a state."""
-    inside = u[1:-1]
-    span = float(inside.max() - inside.min())
-    if not span > 0.0 or inside.size < 5:
-        return 0.0
-    return float(np.max(np.abs(np.diff(inside, 2)))) / span
 
 
 def _next(path: Path, here: Point, length: float, rule: StepLength) -> tuple[Point | None, float, str]:
@@ -133,25 +130,12 @@ def _between(path: Path, before: Point, after: Point) -> Point | None:
 
 
 def _edge(path: Path, before: Point, after: Point, limits: Limits) -> Point | None:
-    """The point on the edge of the parameter's range, where the step crosses it."""
+    """The point on the edge of the parameter's range, where the step first crosses it; a turning point may lie beyond."""
     for edge in (limits.lowest, limits.highest):
-        if (before.parameter - edge) * (after.parameter - edge) < 0.0:
-            share = (edge - before.parameter) / (after.parameter - before.parameter)
-            found = at_parameter(path, before, after, edge)
-            if found is not None:
-                return path.point(found.found, before.arclength + share * (after.arclength - before.arclength), before)
-            return None
+        passed = (before.parameter - edge) * (after.parameter - edge) < 0.0
+        if before.parameter != edge and np.isfinite(edge) and (passed or before.pace * after.pace < 0.0):
+            found = crossings(path, before, after, edge)
+            if found:
+                first = path.point(found[0], before.arclength, before)
+                return replace(first, arclength=before.arclength + distance_of(before, first))
     return None
-
-
-def at_parameter(path: Path, before: Point, after: Point, parameter: float) -> Point | None:
-    """The state between two points at which the parameter has a value; None where Newton's method does not end."""
-    share = (parameter - before.parameter) / (after.parameter - before.parameter)
-    guess = before.u + share * (after.u - before.u)
-    found = path.counted(correct(path.system, guess, parameter, held_parameter(path.system, parameter), before.scales, tolerance=CORRECTED))
-    if not found.ok:
-        guess, _ = predicted(before, share * (after.arclength - before.arclength))
-        found = path.counted(
-            correct(path.system, guess, parameter, held_parameter(path.system, parameter), before.scales, tolerance=CORRECTED)
-        )
-    return path.point(found, before.arclength + share * (after.arclength - before.arclength), before) if found.ok else None

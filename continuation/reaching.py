@@ -17,6 +17,7 @@ from bvp.problem import Problem
 from bvp.resample import carried
 from bvp.state import State
 from continuation.asked import asked
+from continuation.bracket import Bracket
 from continuation.path import Path, Point
 from continuation.records import Branch, Refined
 from continuation.refinement import refined
@@ -90,27 +91,21 @@ class ValueDetector:
             self.found.append(place)
 
     def _closed_in(self, path: Path, before: Point, after: Point, left: float, right: float) -> Place | None:
-        """The zero of the gap between two points, by the bracketed secants of Anderson & Bjorck."""
-        low, high = 0.0, after.arclength - before.arclength
-        low_gap, high_gap = left, right
-        width = high
+        """The zero of the gap between two points."""
+        far = after.arclength - before.arclength
+        bracket: Bracket[None] = Bracket(0.0, far, left, right, None, None)
         for _ in range(MOST_SECANTS):
-            distance = (low * high_gap - high * low_gap) / (high_gap - low_gap)
+            distance = bracket.trial()
             found = path.step_from(before, distance, tolerance=POLISHED)
             if not found.ok:
-                distance = 0.5 * (low + high)
+                distance = 0.5 * (bracket.left + bracket.right)
                 found = path.step_from(before, distance, tolerance=POLISHED)
                 if not found.ok:
                     return None
             gap = self.gap(path.system, found.u, found.parameter)
-            if gap == 0.0 or abs(high - low) <= REACHED * width:
+            if gap == 0.0 or bracket.width <= REACHED * far:
                 break
-            if gap * high_gap < 0.0:
-                low, low_gap = high, high_gap
-            else:
-                lowered = 1.0 - gap / high_gap
-                low_gap *= lowered if lowered > 0.0 else 0.5
-            high, high_gap = distance, gap
+            bracket.take(distance, gap, None)
         return Place(found, path.point(found, before.arclength + distance, before))
 
 

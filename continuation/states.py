@@ -18,7 +18,7 @@ from bvp.problem import Problem
 from bvp.resample import carried
 from bvp.state import State
 from continuation.asked import Asked, asked
-from continuation.follow import at_parameter
+from continuation.crossing import crossings
 from continuation.path import Path, Point
 from continuation.records import Branch, TurningPoint
 from continuation.refinement import refined
@@ -69,29 +69,10 @@ class Crossings:
 
     def look(self, path: Path, before: Point, after: Point) -> None:
         """Solve at the value where the step passes it; a point that sits on it belongs to the step that ends there."""
-        gap_before, gap_after = before.parameter - self.value, after.parameter - self.value
-        if gap_after == 0.0:
+        if after.parameter == self.value:
             self.found.append(after.found)
-        elif gap_before * gap_after < 0.0:
-            here = at_parameter(path, before, after, self.value)
-            if here is not None:
-                self.found.append(here.found)
-        elif gap_before != 0.0 and before.pace * after.pace < 0.0:
-            self._look_around_turning(path, before, after)
-
-    def _look_around_turning(self, path: Path, before: Point, after: Point) -> None:
-        """Both states between a turning point and two points on the far side of the value."""
-        from continuation import turning
-
-        located = turning.between(path, before, after)
-        if located is None or (located.parameter - self.value) * (before.parameter - self.value) >= 0.0:
-            return
-        reach = math.sqrt(abs(2.0 * (located.parameter - self.value) / located.curvature)) if located.curvature else 0.0
-        for side in (-1.0, 1.0):
-            u = located.u + side * reach * located.null
-            here = solved(path.system, u, self.value)
-            if here.ok:
-                self.found.append(here)
+        elif before.parameter != self.value:
+            self.found += crossings(path, before, after, self.value)
 
 
 def states_at(problem: Problem, *, at: Mapping[str, float], along: str | None = None, discrete: bool = False, **keywords: Any) -> StatesAt:
@@ -277,14 +258,17 @@ def _finer_grid(branch: Branch, value: float) -> int | str | None:
         hidden = value > one.on_grid if one.states == "below" else value < one.on_grid
         distance = abs(one.value - value)
         if one.uncertainty is not None and distance <= one.uncertainty:
-            return f"{branch.along} = {value:.12g} is within the uncertainty of the turning point at {one.value:.12g}: whether states exist there is undecided."
+            return (
+                f"{branch.along} = {value:.12g} is within the uncertainty of the turning point at {one.value:.12g}: "
+                "whether states exist there is undecided."
+            )
         if inside and hidden:
             gain = abs(one.value - one.on_grid) / distance
             intervals = 2 * math.ceil(1.2 * branch.intervals * gain ** (1.0 / max(one.order or 2.0, 1.0)) / 2.0)
             if intervals > MOST_INTERVALS_NEAR:
                 return (
-                    f"{branch.along} = {value:.12g} is so near to the turning point at {one.value:.12g} that {intervals} intervals would be needed to tell its two states apart; "
-                    "they exist, and differ little from the state at the turning point."
+                    f"{branch.along} = {value:.12g} is so near to the turning point at {one.value:.12g} that {intervals} intervals "
+                    "would be needed to tell its two states apart; they exist, and differ little from the state at the turning point."
                 )
             return intervals
     return None
@@ -301,6 +285,7 @@ def _margin(branch: Branch, value: float, discrete: bool) -> dict[str, Any]:
         "turning_point": float(place),
         "uncertainty": None if discrete else nearest.uncertainty,
         "distance": float(place - value),
+        "past": bool(value > place if nearest.states == "below" else value < place),
         "share": float((place - value) / place) if place else None,
     }
 

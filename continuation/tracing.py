@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import time
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
 
@@ -195,10 +195,17 @@ def _recorded(
         seconds=max(spent - compiled, 0.0),
         compile_seconds=compiled,
         complete=not interrupted and all(followed.ended != "no smaller step" for followed, _ in sides),
-        notes=tuple(
-            dict.fromkeys([*notes, *(f"turning point {number}: {note}" for number, one in enumerate(turning, 1) for note in one.notes)])
-        ),
+        notes=tuple(dict.fromkeys([*notes, *_notes_on_turning(turning)])),
     )
+
+
+def _notes_on_turning(points: Sequence[TurningPoint]) -> list[str]:
+    """The notes of turning points, each once with the numbers of those that it is about."""
+    about: dict[str, list[int]] = {}
+    for number, point in enumerate(points, start=1):
+        for note in point.notes:
+            about.setdefault(note if point.survives else note.partition(":")[0], []).append(number)
+    return [f"turning point{'s' * (len(numbers) > 1)} {', '.join(map(str, numbers))}: {note}" for note, numbers in about.items()]
 
 
 def _mirrored(point: Kept) -> Kept:
@@ -215,8 +222,8 @@ def _notes(followed: Followed, recorder: Recorder, asked_for: Asked) -> list[str
     where = f"{asked_for.along} = {followed.points[-1].parameter:.6g}"
     if followed.ended == COARSE:
         notes.append(
-            f"the trace ended at {where}: {asked_for.grid.intervals} intervals no longer resolve the state there (its peak stands on a node or two). "
-            "More intervals, or a grid that is graded towards it, go further."
+            f"the trace ended at {where}: {asked_for.grid.intervals} intervals no longer resolve the state there. "
+            "More intervals, or a grid that is graded towards its peak or layer, go further."
         )
     if followed.reason:
         notes.append(f"the trace ended at {where}: {followed.reason}.")

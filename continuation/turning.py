@@ -14,6 +14,7 @@ import numpy.typing as npt
 
 from bvp.discretize import DiscreteSystem
 from bvp.newton import Corrected, Scales, correct
+from continuation.bracket import Bracket
 from continuation.path import Path, Point, border_through, norm_of
 
 Array = npt.NDArray[np.float64]
@@ -33,6 +34,7 @@ class DiscreteTurning:
     curvature: float
     scales: Scales
     found: Corrected
+    distance: float = 0.0  # along the tangent of the point that it was looked for from
 
     @property
     def states(self) -> str:
@@ -44,39 +46,25 @@ def between(path: Path, before: Point, after: Point) -> DiscreteTurning | None:
     """The turning point between two points of a branch whose paces differ in sign; None where it cannot be closed in on."""
     border = border_through(before, 0.0)
     far = border.factor * float(np.dot(border.direction, after.u - before.u)) + border.corner * (after.parameter - before.parameter)
-    left, right = 0.0, far
-    left_pace, right_pace = before.pace, _pace_across(after, before)
-    if not left_pace * right_pace < 0:
+    pace_after = _pace_across(after, before)
+    if not before.pace * pace_after < 0:
         return None
-    left_state, right_state = (before.u, before.parameter), (after.u, after.parameter)
-    scale = before.scales.parameter
+    ends = (before.u, before.parameter), (after.u, after.parameter)
+    bracket = Bracket(0.0, far, before.pace, pace_after, *ends)
     found: Corrected | None = None
-    weight_left = weight_right = 1.0
+    slope = 0.0
     for _ in range(MOST_SECANTS):
-        a, b = weight_left * left_pace, weight_right * right_pace
-        distance = (left * b - right * a) / (b - a)
-        share = (distance - left) / (right - left)
-        guess = (left_state[0] + share * (right_state[0] - left_state[0]), left_state[1] + share * (right_state[1] - left_state[1]))
-        found = path.step_from(before, distance, guess, tolerance=POLISHED)
+        distance = bracket.trial()
+        share, (u, parameter), (other, next_parameter) = bracket.share(distance), bracket.left_held, bracket.right_held
+        found = path.step_from(before, distance, (u + share * (other - u), parameter + share * (next_parameter - parameter)), POLISHED)
         if not found.ok:
             return None
-        pace = found.pace
-        slope = (right_pace - left_pace) / (right - left)
-        if abs(pace) <= LEVEL * abs(slope) or abs(right - left) <= 1e-13 * abs(far):
+        slope = bracket.slope
+        small = abs(found.pace) * abs(far) <= 1e-15 * before.scales.parameter and abs(found.pace / slope) < 1e-8
+        if small or abs(found.pace) <= LEVEL * abs(slope) or bracket.width <= 1e-13 * abs(far):
             break
-        if abs(pace) * abs(far) <= 1e-15 * scale and abs(pace / slope) < 1e-8:
-            break
-        # Regula falsi with the idle end's weight lowered (Anderson & Bjorck 1973, from memory), so that both ends close in.
-        if pace * right_pace < 0:
-            left, left_pace, left_state, weight_left = right, right_pace, right_state, 1.0
-            right, right_pace, right_state, weight_right = distance, pace, (found.u, found.parameter), 1.0
-        else:
-            lowered = 1.0 - pace / right_pace
-            weight_left *= lowered if lowered > 0 else 0.5
-            right, right_pace, right_state, weight_right = distance, pace, (found.u, found.parameter), 1.0
-    if found is None:
-        return None
-    return _turning(found, before.scales, (right_pace - left_pace) / (right - left) if right != left else 0.0)
+        bracket.take(distance, found.pace, (found.u, found.parameter))
+    return None if found is None else _turning(found, before.scales, slope, distance)
 
 
 def _pace_across(point: Point, base: Point) -> float:
@@ -86,9 +74,9 @@ def _pace_across(point: Point, base: Point) -> float:
     return point.pace / across
 
 
-def _turning(found: Corrected, scales: Scales, curvature: float) -> DiscreteTurning:
+def _turning(found: Corrected, scales: Scales, curvature: float, distance: float) -> DiscreteTurning:
     length = norm_of(found.tangent, 0.0, scales)
-    return DiscreteTurning(found.u, found.parameter, found.tangent / length, curvature / length**2, scales, found)
+    return DiscreteTurning(found.u, found.parameter, found.tangent / length, curvature / length**2, scales, found, distance)
 
 
 def near(system: DiscreteSystem, u: Array, parameter: float, null: Array, curvature: float, scales: Scales) -> DiscreteTurning | str:
@@ -112,7 +100,7 @@ def near(system: DiscreteSystem, u: Array, parameter: float, null: Array, curvat
             slope = measured if np.isfinite(measured) and measured != 0.0 and abs(distance - last[0]) > 1e-7 else slope
         move = -found.pace / slope
         if abs(move) <= LEVEL or (abs(move) <= 1e-7 and abs(move) >= smallest):
-            return _turning(found, scales, slope)
+            return _turning(found, scales, slope, distance)
         smallest = min(smallest, abs(move))
         last = (distance, found.pace)
         move = float(np.clip(move, -0.3, 0.3))
