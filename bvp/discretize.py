@@ -82,6 +82,16 @@ class Discretization:
     # -- numbers and arrays in their order ----------------------------------------------------------------------------
 
     @cached_property
+    def array_functions(self) -> dict[str, Any]:
+        """The functions of the formulas for arrays."""
+        return self.problem.function_table(numpy_functions())
+
+    @cached_property
+    def float_functions(self) -> dict[str, Any]:
+        """The functions of the formulas for numbers."""
+        return self.problem.function_table(float_functions())
+
+    @cached_property
     def number_index(self) -> dict[str, int]:
         """Where each scalar stands in the kernels' `numbers`."""
         names = ["#step", "#part", *self.problem.parameters, *(leaf.name for leaf in self.hoisted.scalars.values())]
@@ -172,8 +182,7 @@ class DiscreteSystem:
         self.values = dict(values)
         self.size = grid.intervals + 3
         self.left_kind, self.right_kind = discretization.rows.left_kind, discretization.rows.right_kind
-        self._functions = discretization.problem.function_table(numpy_functions())
-        self._floats = discretization.problem.function_table(float_functions())
+        self._functions, self._floats = discretization.array_functions, discretization.float_functions
         self._numbers = self._all_numbers(self.values.get(discretization.along, 0.0))
         self._fill_arrays()
         self.step, self.tangent = np.zeros(self.size), np.zeros(self.size)

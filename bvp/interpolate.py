@@ -7,6 +7,9 @@ entry a node (no ghosts); with an axis at the left it is continued evenly.
 
 from __future__ import annotations
 
+import math
+from itertools import pairwise
+
 import numpy as np
 import numpy.typing as npt
 
@@ -32,10 +35,10 @@ def window(values: Array, index: int, even: bool) -> tuple[Array, int]:
 
 def newton_coefficients(values: Array) -> list[float]:
     """Newton's form in t = 0, 1, 2, …: forward differences over factorials."""
-    row = [float(value) for value in values]
+    row = values.tolist()
     coefficients, factorial = [row[0]], 1.0
     for order in range(1, len(row)):
-        row = [row[index + 1] - row[index] for index in range(len(row) - 1)]
+        row = [after - before for before, after in pairwise(row)]
         factorial *= order
         coefficients.append(row[0] / factorial)
     return coefficients
@@ -61,7 +64,7 @@ def at_index(values: Array, position: float, even: bool = False, order: int = 0)
 def largest(values: Array, even: bool = False) -> tuple[float, float]:
     """The greatest value of the interpolant and its position in nodes; at a node, at an end, or between nodes."""
     top = int(np.argmax(values))
-    if not np.isfinite(values[top]):
+    if not math.isfinite(values[top]):
         return float("nan"), float(top)
     near, first = window(values, top, even)
     coefficients = newton_coefficients(near)

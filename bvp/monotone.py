@@ -14,7 +14,6 @@ from __future__ import annotations
 
 import numpy as np
 import numpy.typing as npt
-from scipy.linalg import solve_banded
 
 Floats = npt.NDArray[np.float64]
 Booleans = npt.NDArray[np.bool_]
@@ -44,6 +43,8 @@ def spline_slopes(knots: Floats, steepness: Floats, held: Booleans, given: Float
     if count == 3 and not np.any(held):  # one parabola
         middle = (steps[1] * steepness[0] + steps[0] * steepness[1]) / (steps[0] + steps[1])
         return np.array([2 * steepness[0] - middle, middle, 2 * steepness[1] - middle])
+    from scipy.linalg import solve_banded  # here, because loading it takes longer than most runs
+
     band = np.zeros((3, count))  # above, on and below the diagonal, as solve_banded takes them
     right = np.empty(count)
     band[1, 1:-1] = 2 * (steps[:-1] + steps[1:])

@@ -104,7 +104,7 @@ def correct(
     first = norm = scales.size(info[2], nodes, info[0])
     sweeps, taken = 1, 0
     contraction, damping = 1.0, 1.0
-    reason = "" if np.isfinite(norm) else "the equations have no finite value at the first guess"
+    reason = "" if math.isfinite(norm) else "the equations have no finite value at the first guess"
 
     def ended(why: str) -> Corrected:
         return Corrected(
@@ -144,13 +144,13 @@ def correct(
             info = system.sweep(trial, moved, border.direction, border.factor, border.corner, remaining)
             sweeps += 1
             after = scales.size(info[2], nodes, info[0])
-            if np.isfinite(after) and (after <= (1.0 - damping / 4.0) * norm or (after < ROUNDING and damping == 1.0)):
+            if math.isfinite(after) and (after <= (1.0 - damping / 4.0) * norm or (after < ROUNDING and damping == 1.0)):
                 break
             damping /= 2.0
             if damping < smallest_damping:
                 outside = (
                     "the equations have no finite value near here"
-                    if not np.isfinite(after)
+                    if not math.isfinite(after)
                     else "Newton's steps no longer shrink the correction"
                 )
                 reason = f"{outside} (after {taken} steps, correction {norm:.1e} of the state)"

@@ -330,13 +330,11 @@ def _where(texts: Mapping[str, str], vocabulary: Vocabulary, origin: str) -> dic
 
 
 def _tables(measured: Mapping[str, Any], functions: Mapping[str, GivenFunction]) -> dict[str, Any]:
+    if not measured:
+        return dict(functions)
     from bvp.measured import MeasuredFunction
 
-    made = (
-        {name: data if isinstance(data, MeasuredFunction) else MeasuredFunction(name, *data) for name, data in measured.items()}
-        if measured
-        else {}
-    )
+    made = {name: data if isinstance(data, MeasuredFunction) else MeasuredFunction(name, *data) for name, data in measured.items()}
     return {**made, **functions}
 
 

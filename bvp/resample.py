@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
+from functools import lru_cache
+
 import numpy as np
 import numpy.typing as npt
 
 Array = npt.NDArray[np.float64]
 
 POINTS = 6
+MOST_REMEMBERED = 2000  # intervals of grids whose weights are kept
 
 
 def resampled(values: Array, positions: Array, even: bool = False) -> Array:
@@ -15,21 +18,7 @@ def resampled(values: Array, positions: Array, even: bool = False) -> Array:
 
     even : the profile is continued evenly past its left end (an axis).
     """
-    reach = POINTS // 2
-    held = np.concatenate([values[reach:0:-1], values]) if even and values.size > reach else values
-    shift = reach if held.size > values.size else 0
-    count = held.size
-    points = min(POINTS, count)
-    first = np.clip(np.floor(positions).astype(np.int64) + shift - (points // 2 - 1), 0, count - points)
-    t = positions + shift - first
-    total = np.zeros(positions.size)
-    for node in range(points):
-        weight = np.ones(positions.size)
-        for other in range(points):
-            if other != node:
-                weight *= (t - other) / (node - other)
-        total += weight * held[first + node]
-    return total
+    return _combined(values, even, *_weights(values.size, positions, even))
 
 
 def carried(nodal: Array, intervals: int, even: bool = False) -> Array:
@@ -37,5 +26,36 @@ def carried(nodal: Array, intervals: int, even: bool = False) -> Array:
     old = nodal.size - 3
     if old == intervals:
         return nodal.copy()
-    positions = np.arange(-1, intervals + 2) * (old / intervals)
-    return resampled(nodal[1:-1], positions, even)
+    weights = _remembered if max(old, intervals) <= MOST_REMEMBERED else _between
+    return _combined(nodal[1:-1], even, *weights(old, intervals, even))
+
+
+def _between(old: int, intervals: int, even: bool) -> tuple[npt.NDArray[np.int64], Array]:
+    return _weights(old + 1, np.arange(-1, intervals + 2) * (old / intervals), even)
+
+
+_remembered = lru_cache(maxsize=64)(_between)  # a branch's grids are the same for each of its turning points
+
+
+def _weights(count: int, positions: Array, even: bool) -> tuple[npt.NDArray[np.int64], Array]:
+    """The first node of each position's polynomial, and the weights of its nodes, shape (points, positions)."""
+    reach = POINTS // 2 if even and count > POINTS // 2 else 0
+    held = count + reach
+    points = min(POINTS, held)
+    first = np.clip(np.floor(positions).astype(np.int64) + reach - (points // 2 - 1), 0, held - points)
+    t = positions + reach - first
+    weights = np.ones((points, positions.size))
+    for node in range(points):
+        for other in range(points):
+            if other != node:
+                weights[node] *= (t - other) / (node - other)
+    return first, weights
+
+
+def _combined(values: Array, even: bool, first: npt.NDArray[np.int64], weights: Array) -> Array:
+    reach = POINTS // 2
+    held = np.concatenate([values[reach:0:-1], values]) if even and values.size > reach else values
+    total = weights[0] * held[first]
+    for node in range(1, len(weights)):
+        total += weights[node] * held[first + node]
+    return total

@@ -10,7 +10,7 @@ from typing import Any
 from cases.case import Case
 from cases.results import ReachedMeasure, Solved, Traced
 from cases.tables import table, wrapped
-from cases.words import head_of_measure, head_of_name, with_unit
+from cases.words import head_of_measure, head_of_name
 from continuation.digits import rounded_safe, significant, with_uncertainty
 
 SAFE_DIGITS = 3
@@ -56,12 +56,13 @@ def _(result: Solved) -> Lines:
     of_equation = found.asked == "equation"
     yield from _head(case, "steady states of the equation" if of_equation else "steady states of the difference scheme on this grid alone")
     at = found.at if isinstance(found.at, Mapping) else {_along(case): found.at}
-    place = ", ".join(f"{name} = {with_unit(f'{value:.12g}', case.unit(name))}" for name, value in at.items())
+    place = ", ".join(f"{name} = {value:.12g} {case.unit(name)}".rstrip() for name, value in at.items())
+    count = len(found.states)
     yield ""
-    if not found.states:
-        yield f"No steady state at {place}."
+    if not count:
+        yield from wrapped(f"No steady state at {place}.")
     else:
-        yield f"{len(found.states)} steady state{'s' * (len(found.states) != 1)} at {place}"
+        yield from wrapped(f"{count} steady state{'s' * (count != 1)} at {place}")
         yield ""
         measures = list(found.states[0].measures)
         rows = []

@@ -15,6 +15,7 @@ from bvp.measures import Measure
 from bvp.problem import Problem
 from bvp.schemes import Scheme
 from continuation.grids import grid_for
+from continuation.step_length import FOR_FIGURES, StepLength
 
 DIRECTIONS = {"up": (1.0,), "down": (-1.0,), "both": (-1.0, 1.0)}
 LONGEST = 400  # points of one direction
@@ -53,6 +54,7 @@ class Asked:
     watch: Watch | None
     profiles: int
     longest: int
+    step_length: StepLength
 
 
 def asked(
@@ -73,6 +75,7 @@ def asked(
     watch: Watch | None = None,
     profiles: int = 200,
     longest: int = LONGEST,
+    step_length: StepLength = FOR_FIGURES,
     compiled: bool = True,
 ) -> Asked:
     """The keywords of `trace`, checked; InputError says which makes no sense, and what would."""
@@ -106,6 +109,7 @@ def asked(
         watch=watch,
         profiles=max(int(profiles), 2),
         longest=max(int(longest), 2),
+        step_length=step_length,
     )
 
 

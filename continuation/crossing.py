@@ -6,6 +6,8 @@ only from close by at the value itself: Newton's method at a fixed parameter wou
 
 from __future__ import annotations
 
+from itertools import pairwise
+
 import numpy as np
 import numpy.typing as npt
 
@@ -30,7 +32,7 @@ def crossings(path: Path, before: Point, after: Point, value: float) -> list[Cor
         if located is not None:
             stations.insert(1, (located.distance, located.u, located.parameter))
     found = []
-    for left, right in zip(stations, stations[1:], strict=False):
+    for left, right in pairwise(stations):
         if (left[2] - value) * (right[2] - value) < 0.0:
             here = _closed_in(path, before, left, right, value)
             if here is not None:

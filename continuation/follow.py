@@ -6,6 +6,7 @@ reached are three of them. Adding one touches its own file and the list it is pa
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field, replace
 from typing import Protocol
@@ -96,7 +97,7 @@ def _next(path: Path, here: Point, length: float, rule: StepLength) -> tuple[Poi
         found = path.step_from(here, length)
         if found.ok:
             after = path.point(found, here.arclength + length, here)
-            turn = float(np.arccos(np.clip(here.tangent_to(after), -1.0, 1.0)))
+            turn = math.acos(max(-1.0, min(here.tangent_to(after), 1.0)))
             if rule.accepted(turn, found.first):
                 return after, rule.following(length, turn, found.first, found.steps), ""
             reason = "the branch bends more sharply than the smallest step can follow"
@@ -133,7 +134,7 @@ def _edge(path: Path, before: Point, after: Point, limits: Limits) -> Point | No
     """The point on the edge of the parameter's range, where the step first crosses it; a turning point may lie beyond."""
     for edge in (limits.lowest, limits.highest):
         passed = (before.parameter - edge) * (after.parameter - edge) < 0.0
-        if before.parameter != edge and np.isfinite(edge) and (passed or before.pace * after.pace < 0.0):
+        if before.parameter != edge and math.isfinite(edge) and (passed or before.pace * after.pace < 0.0):
             found = crossings(path, before, after, edge)
             if found:
                 first = path.point(found[0], before.arclength, before)

@@ -6,6 +6,7 @@ relative to the state and to the parameter, so that temperatures of 300 and rate
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 
 import numpy as np
@@ -50,7 +51,7 @@ def inner(u: Array, p: float, v: Array, q: float, scales: Scales) -> float:
 
 def norm_of(u: Array, p: float, scales: Scales) -> float:
     """The length of a change."""
-    return float(np.sqrt(inner(u, p, u, p, scales)))
+    return math.sqrt(inner(u, p, u, p, scales))
 
 
 def border_through(point: Point, distance: float) -> Border:
@@ -77,10 +78,10 @@ class Path:
         """The sizes of state and parameter here: the way from the beginning, or their own values where these are less."""
         nodes = u.size - 2
         away = (u - self.began[0])[1:-1]
-        state = max(self.travelled.state, float(np.sqrt(np.dot(away, away) / nodes)))
+        state = max(self.travelled.state, math.sqrt(float(np.dot(away, away)) / nodes))
         change = max(self.travelled.parameter, abs(parameter - self.began[1]))
         self.travelled = Scales(state, change)
-        size = float(np.sqrt(np.dot(u[1:-1], u[1:-1]) / nodes))
+        size = math.sqrt(float(np.dot(u[1:-1], u[1:-1])) / nodes)
         return Scales(
             max(min(size, state), STATE_FLOOR * state, self.least.state),
             max(min(abs(parameter), change), PARAMETER_FLOOR * change, self.least.parameter),
@@ -96,7 +97,6 @@ class Path:
         """The point at a corrected state, its tangent of unit length and turned the way of `like`, or of the parameter's sign."""
         scales = self.scales_at(found.u, found.parameter)
         tangent, pace = found.tangent, found.pace
-        tangent[0], tangent[-1] = tangent[0], tangent[-1]
         length = norm_of(tangent, pace, scales)
         if like is None:
             turned = sign if pace >= 0 else -sign
@@ -116,7 +116,7 @@ def predicted(point: Point, distance: float) -> tuple[Array, float]:
     move = distance * point.pace
     parameter = point.parameter
     if parameter != 0.0 and abs(move) > 0.2 * abs(parameter) and abs(parameter) >= point.scales.parameter:
-        parameter *= float(np.exp(np.clip(move / parameter, -2.0, 2.0)))
+        parameter *= math.exp(max(-2.0, min(move / parameter, 2.0)))
     else:
         parameter += move
     return point.u + distance * point.tangent, parameter

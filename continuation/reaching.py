@@ -201,7 +201,7 @@ def _found_again(system: DiscreteSystem, known: Place, intervals: int, even: boo
             return Place(found, path.point(found, point.arclength, point_like(base)))
         move = step if last is None else -gap * (distance - last[0]) / (gap - last[1])
         last, step = (distance, gap), move
-        distance += float(np.clip(move, -0.3, 0.3))
+        distance += max(-0.3, min(move, 0.3))
         if abs(distance) > 2.0:
             return "the place is too far from that of the neighbouring grid"
     return f"the value was not closed in on within {MOST_SECANTS} secants"

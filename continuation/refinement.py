@@ -60,7 +60,7 @@ def refined(
     start: Feature,
     intervals: int,
     find: Callable[[int, Feature, int], Feature | str],
-    values: Callable[[Feature, int], Mapping[str, float]],
+    measure: Callable[[Feature, int], Mapping[str, float]],
     digits: int | None,
     repeat: Callable[[Feature, int], float],
     *,
@@ -69,14 +69,22 @@ def refined(
 ) -> Refinement[Feature]:
     """Refine what was found on a grid of `intervals`.
 
-    find(N, feature, M) looks on N intervals for the feature known on M, and returns it or a sentence why not. values
+    find(N, feature, M) looks on N intervals for the feature known on M, and returns it or a sentence why not. measure
     gives the numbers to extrapolate, the main one under "". repeat solves the finest again from disturbed data: what it
-    differs by is the rounding of the solves. coarsest : an even number of intervals to begin with. Ends once the main value has its digits, or at `most` intervals.
+    differs by is the rounding of the solves. coarsest : an even number of intervals to begin with. Ends once the main
+    value has its digits, or at `most` intervals.
     """
     base = coarsest or int(np.clip(2 * (intervals // 16), COARSEST, FIRST_COARSE))
     families = (Family[Feature](base), Family[Feature](base * 3 // 2))
     known: dict[int, Feature] = {intervals: start}
     notes: list[str] = []
+    measured: dict[int, Mapping[str, float]] = {}
+
+    def values(feature: Feature, count: int) -> Mapping[str, float]:
+        """What `measure` gives, worked out once a grid."""
+        if count not in measured:
+            measured[count] = measure(feature, count)
+        return measured[count]
 
     def visit(count: int) -> str | None:
         nearest = min(known, key=lambda other: (abs(np.log(other / count)), -other))

@@ -19,11 +19,14 @@ def roughness(u: Array) -> float:
 
     About (h/l)^2 where the state changes over lengths l, and 2 where a peak stands on one node.
     """
-    second = np.abs(np.diff(u[1:-1], 2))
-    if second.size < FEWEST - 1:
+    if u.size < FEWEST + 3:
         return 0.0
-    largest = float(second.max())
-    return float(np.abs(np.diff(u[1:-1], 4)).max()) / largest if largest > 0.0 else 0.0
+    first = u[2:-1] - u[1:-2]
+    second = first[1:] - first[:-1]
+    third = second[1:] - second[:-1]
+    fourth = third[1:] - third[:-1]
+    largest = max(float(second.max()), -float(second.min()))
+    return max(float(fourth.max()), -float(fourth.min())) / largest if largest > 0.0 else 0.0
 
 
 def resolves(path: Path, point: Point) -> bool:

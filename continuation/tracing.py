@@ -23,7 +23,7 @@ from continuation.follow import COARSE, STOPPED, Detector, Followed, Limits, fol
 from continuation.path import Point
 from continuation.records import Branch, TurningPoint
 from continuation.start import first_point, first_state
-from continuation.step_length import StepLength
+from continuation.step_length import ON_THE_WAY
 from continuation.turning_refined import Setting, TurningDetector, measured, turning_point
 
 Array = npt.NDArray[np.float64]
@@ -91,7 +91,7 @@ def trace(problem: Problem, along: str | None = None, **keywords: Any) -> Branch
     Keywords, as in a case file: start (its value at the first state), direction (up, down, both), within (lowest and
     highest), until ("max(u) > 20"), turning_points_wanted, measure (one or several), scheme, intervals, grid, digits
     (None: turning points are not refined), at (other parameters), watch (called with each step, may ask to stop),
-    profiles (the most that are kept), longest (points of one direction), compiled (False: NumPy alone).
+    profiles (the most that are kept), longest (points of one direction), step_length (a rule), compiled (False: NumPy alone).
 
     The branch ends where the parameter leaves `within`, where `until` holds, at the turning points wanted, in itself,
     after `longest` points, where the grid no longer resolves the state, or where `watch` asks for it; `ended` says which.
@@ -105,7 +105,7 @@ def first_turning_point(problem: Problem, along: str | None = None, *, digits: i
 
     ComputationError where the branch ends before one, with the ending.
     """
-    branch = trace(problem, along, digits=digits, turning_points_wanted=1, **keywords)
+    branch = trace(problem, along, **{"digits": digits, "turning_points_wanted": 1, "step_length": ON_THE_WAY, **keywords})
     if not branch.turning_points:
         raise ComputationError(f"no turning point up to {branch.along} = {branch.parameter[-1]:.6g}; the branch ended: {branch.ended}")
     return branch.turning_points[0]
@@ -136,7 +136,7 @@ def traced(asked_for: Asked, extra: tuple[Detector, ...] = (), name: str = "main
         path, point = first_point(system, found, sign)
         path.steps = path.sweeps = 0
         limits = Limits(asked_for.lowest, asked_for.highest, asked_for.longest, recorder.ended)
-        sides.append((follow(path, point, StepLength(), limits, [recorder.turning, *extra], recorder), recorder))
+        sides.append((follow(path, point, asked_for.step_length, limits, [recorder.turning, *extra], recorder), recorder))
         steps, sweeps = steps + path.steps, sweeps + path.sweeps
         if recorder.stopped or sides[-1][0].ended == "closed loop":
             break

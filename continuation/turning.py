@@ -7,6 +7,7 @@ vector, and the parameter's error is of second order in what is left of the deri
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 
 import numpy as np
@@ -97,13 +98,13 @@ def near(system: DiscreteSystem, u: Array, parameter: float, null: Array, curvat
             return found.reason
         if last is not None and distance != last[0]:
             measured = (found.pace - last[1]) / (distance - last[0])
-            slope = measured if np.isfinite(measured) and measured != 0.0 and abs(distance - last[0]) > 1e-7 else slope
+            slope = measured if math.isfinite(measured) and measured != 0.0 and abs(distance - last[0]) > 1e-7 else slope
         move = -found.pace / slope
         if abs(move) <= LEVEL or (abs(move) <= 1e-7 and abs(move) >= smallest):
             return _turning(found, scales, slope, distance)
         smallest = min(smallest, abs(move))
         last = (distance, found.pace)
-        move = float(np.clip(move, -0.3, 0.3))
+        move = max(-0.3, min(move, 0.3))
         distance += move
         if abs(distance) > 2.0:
             return "the turning point is too far from that of the neighbouring grid"

@@ -14,9 +14,13 @@ def numpy_functions() -> dict[str, Callable[..., Any]]:
     NumPy warns where that happens: whoever evaluates decides with numpy.errstate.
     """
     import numpy as np
-    from scipy.special import erf
 
     same = ("exp", "log", "sqrt", "sin", "cos", "tan", "sinh", "cosh", "tanh", "abs", "sign", "log1p", "expm1")
+
+    def erf(z: Any) -> Any:
+        from scipy import special  # here, because few formulas need it and loading it takes longer than most runs
+
+        return special.erf(z)
 
     def cardinal(z: Any) -> Any:
         half = np.sqrt(np.abs(z)) / 2.0
