@@ -8,7 +8,7 @@ memory). A trial outside of the domain of a formula is one without a finite corr
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from typing import NamedTuple
 
 import numpy as np
 import numpy.typing as npt
@@ -21,8 +21,7 @@ SMALLEST_DAMPING = 2.0**-20
 ROUNDING = 1e-11  # a correction below this that no longer shrinks is rounding, not failure
 
 
-@dataclass(frozen=True)
-class Border:
+class Border(NamedTuple):
     """The row that closes the system: factor * direction . (u - anchor) + corner * (p - anchor_parameter) = distance."""
 
     direction: Array
@@ -44,8 +43,7 @@ def held_parameter(system: DiscreteSystem, parameter: float) -> Border:
     return Border(nothing, 0.0, 1.0, nothing, parameter)
 
 
-@dataclass(frozen=True)
-class Scales:
+class Scales(NamedTuple):
     """What one unit of change is: of the state (root mean square over the nodes) and of the parameter."""
 
     state: float
@@ -56,8 +54,7 @@ class Scales:
         return math.hypot(math.sqrt(squares / nodes) / self.state, parameter / self.parameter) if squares >= 0.0 else math.nan
 
 
-@dataclass(frozen=True)
-class Corrected:
+class Corrected(NamedTuple):
     """Where Newton's method ended: `ok`, or not with the reason; the tangent there, not normalised.
 
     positive and negative count the pivots' signs (negative = directions in which the state returns), alike is whether

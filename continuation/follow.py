@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass, field, replace
+from dataclasses import dataclass, field
 from typing import Protocol
 
 import numpy as np
@@ -138,5 +138,5 @@ def _edge(path: Path, before: Point, after: Point, limits: Limits) -> Point | No
             found = crossings(path, before, after, edge)
             if found:
                 first = path.point(found[0], before.arclength, before)
-                return replace(first, arclength=before.arclength + distance_of(before, first))
+                return first._replace(arclength=before.arclength + distance_of(before, first))
     return None

@@ -7,7 +7,7 @@ relative to the state and to the parameter, so that temperatures of 300 and rate
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from typing import NamedTuple
 
 import numpy as np
 import numpy.typing as npt
@@ -24,8 +24,7 @@ STATE_FLOOR = 1e-3
 CORRECTED = 1e-9  # of the state: the last correction at a point of a branch
 
 
-@dataclass(frozen=True)
-class Point:
+class Point(NamedTuple):
     """A point of a branch: state with ghosts, parameter, unit tangent (state and parameter), arclength so far."""
 
     u: Array
