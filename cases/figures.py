@@ -9,6 +9,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from cases.published import Compared
+from cases.words import NUMERICAL_ONLY
 from continuation.digits import with_uncertainty
 
 if TYPE_CHECKING:
@@ -47,7 +48,8 @@ def branch_figure(
         FigureCanvasAgg(figure)
         width = WIDTH * POINTS_PER_INCH - 2 * _MARGIN
         heading = wrapped(title, width, figure, TITLE_SIZE, "bold")
-        lines = [(line, DARK) for line in wrapped(f"Caution: {caution}" if caution else "", width, figure)]
+        warned = f"Caution: {caution} An uncertainty is {NUMERICAL_ONLY}." if caution else ""
+        lines = [(line, DARK) for line in wrapped(warned, width, figure)]
         for sentence in _published(published):
             lines += [(line, GREY) for line in wrapped(sentence, width, figure)]
         above = len(heading) * TITLE_HEIGHT + _MARGIN

@@ -10,11 +10,10 @@ from typing import Any
 from cases.case import Case
 from cases.results import ReachedMeasure, Solved, Traced
 from cases.tables import table, wrapped
-from cases.words import head_of_measure, head_of_name
+from cases.words import NUMERICAL_ONLY, head_of_measure, head_of_name
 from continuation.digits import rounded_safe, significant, with_uncertainty
 
 SAFE_DIGITS = 3
-NUMERICAL_ONLY = "numerical only, material data not included"
 
 Lines = Iterator[str]
 

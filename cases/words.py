@@ -6,6 +6,8 @@ import re
 
 from cases.case import Case
 
+NUMERICAL_ONLY = "numerical only, material data not included"  # what an uncertainty is where work can hurt someone
+
 _OF_NAME = re.compile(r"(max|min|mean|rms)\(\s*(\w+)\s*\)")
 _AT_PLACE = re.compile(r"(\w+)('?)\((.+)\)")
 

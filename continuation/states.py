@@ -137,9 +137,9 @@ def _answer(
     first = asked_for.measures[0].text
     states.sort(key=lambda one: one.measures[first])
     if undecided is not None:
-        notes.append(undecided)
+        notes.insert(0, undecided)
     elif not states:
-        notes.append(_why_none(branch, name, value, discrete, asked_for.grid.intervals))
+        notes.insert(0, _why_none(branch, name, value, discrete, asked_for.grid.intervals))
     notes.append("only states on the branch traced from its start are listed; others, not connected to it, are not looked for.")
     return StatesAt(
         "scheme" if discrete else "equation",
