@@ -37,6 +37,12 @@ class Border(NamedTuple):
         return along + self.corner * (parameter - self.anchor_parameter) - self.distance
 
 
+def no_value(system: DiscreteSystem, where: str) -> str:
+    """What is said where the rows are not finite; a scheme that ends before its equation does adds its own sentence."""
+    limits = system.of.scheme.limits
+    return f"the equations have no finite value {where}" + (f" ({limits})" if limits else "")
+
+
 def held_parameter(system: DiscreteSystem, parameter: float) -> Border:
     """The border that keeps the parameter where it is."""
     nothing = np.zeros(system.size)
@@ -101,7 +107,7 @@ def correct(
     first = norm = scales.size(info[2], nodes, info[0])
     sweeps, taken = 1, 0
     contraction, damping = 1.0, 1.0
-    reason = "" if math.isfinite(norm) else "the equations have no finite value at the first guess"
+    reason = "" if math.isfinite(norm) else no_value(system, "at the first guess")
 
     def ended(why: str) -> Corrected:
         return Corrected(
@@ -145,11 +151,7 @@ def correct(
                 break
             damping /= 2.0
             if damping < smallest_damping:
-                outside = (
-                    "the equations have no finite value near here"
-                    if not math.isfinite(after)
-                    else "Newton's steps no longer shrink the correction"
-                )
+                outside = no_value(system, "near here") if not math.isfinite(after) else "Newton's steps no longer shrink the correction"
                 reason = f"{outside} (after {taken} steps, correction {norm:.1e} of the state)"
                 break
         if reason:

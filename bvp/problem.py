@@ -88,7 +88,7 @@ class Problem:
             measured=tuple(measured or ()),
             functions={name: given.arguments for name, given in (functions or {}).items()},
         )
-        vocabulary.check()
+        vocabulary.check(origin)
         put("unknowns", unknown_names)
         put("coordinate", coordinate)
         put("parameters", numbers)

@@ -25,7 +25,7 @@ def numpy_functions() -> dict[str, Callable[..., Any]]:
     def cardinal(z: Any) -> Any:
         half = np.sqrt(np.abs(z)) / 2.0
         ratio = np.where(np.asarray(z) > 0.0, np.sin(half), np.sinh(half)) / np.where(half == 0.0, 1.0, half)
-        return np.where(half == 0.0, 1.0, ratio * ratio)
+        return np.where(np.asarray(z) < np.pi**2, np.where(half == 0.0, 1.0, ratio * ratio), np.nan)
 
     def cardinal_slope(z: Any) -> Any:
         from bvp.formula.evaluate import CARDINAL_SLOPE
@@ -39,7 +39,7 @@ def numpy_functions() -> dict[str, Callable[..., Any]]:
         outer = np.where(near, 4.0, z)
         root = np.sqrt(np.abs(outer))
         closed = (np.where(outer > 0.0, np.sin(root), np.sinh(root)) / root - cardinal(outer)) / outer
-        return np.where(near, series, closed)
+        return np.where(z < np.pi**2, np.where(near, series, closed), np.nan)
 
     def fitted(part: int) -> Callable[..., Any]:
         """The fitted weight or one of its derivatives, pair by pair in a kernel."""

@@ -76,7 +76,9 @@ CARDINAL_SLOPE = tuple((-1) ** (m + 1) * 2.0 * (m + 1) / math.factorial(2 * m + 
 
 
 def cardinal(z: float) -> float:
-    """4 sin^2(sqrt(z)/2)/z, entire in z: 1 - z/12 + z^2/360 - …; sinh for z < 0."""
+    """4 sin^2(sqrt(z)/2)/z = 1 - z/12 + z^2/360 - …, sinh for z < 0; nan from pi^2 on, where the fitted scheme ends."""
+    if z >= math.pi**2:
+        return math.nan
     half = math.sqrt(abs(z)) / 2.0
     if half == 0.0:
         return 1.0
@@ -86,6 +88,8 @@ def cardinal(z: float) -> float:
 
 def cardinal_slope(z: float) -> float:
     """The derivative of `cardinal`: (sin(sqrt z)/sqrt z - cardinal(z))/z, near 0 its series."""
+    if z >= math.pi**2:
+        return math.nan
     if abs(z) < 4.0:
         total = 0.0
         for coefficient in reversed(CARDINAL_SLOPE):

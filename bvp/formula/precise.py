@@ -45,6 +45,8 @@ def cardinal(z: Any) -> Any:
     import mpmath
 
     half = mpmath.sqrt(z) / 2
+    if z >= mpmath.pi**2:
+        return mpmath.nan
     return ((mpmath.sin(half) / half) ** 2).real if half else mpmath.mpf(1)
 
 
@@ -52,6 +54,8 @@ def cardinal_slope(z: Any) -> Any:
     """The derivative of cardinal: (sin(sqrt z)/sqrt z - cardinal(z))/z, near 0 its series."""
     import mpmath
 
+    if z >= mpmath.pi**2:
+        return mpmath.nan
     if abs(z) >= NEAR:
         root = mpmath.sqrt(z)
         return ((mpmath.sin(root) / root).real - cardinal(z)) / z

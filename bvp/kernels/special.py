@@ -16,7 +16,9 @@ from bvp.kernels.jit import kernel
 
 @kernel
 def cardinal(z: float) -> float:
-    """4 sin^2(sqrt(z)/2)/z; sinh for z < 0, 1 at z = 0."""
+    """4 sin^2(sqrt(z)/2)/z; sinh for z < 0, 1 at z = 0, nan from pi^2 on."""
+    if z >= math.pi * math.pi:
+        return math.nan
     half = math.sqrt(abs(z)) / 2.0
     if half == 0.0:
         return 1.0
@@ -29,6 +31,8 @@ def cardinal(z: float) -> float:
 @kernel
 def cardinal_slope(z: float) -> float:
     """The derivative of cardinal: (sin(sqrt z)/sqrt z - cardinal(z))/z, a series near 0."""
+    if z >= math.pi * math.pi:
+        return math.nan
     if abs(z) < 4.0:  # the closed form loses digits there; the terms are 2 m (-1)^m/(2 m + 2)! of z^(m - 1)
         terms = (
             -1.0 / 12.0,

@@ -69,6 +69,11 @@ class Fitted(Scheme):
         """Its weights are exact for equal steps."""
         return True
 
+    @property
+    def limits(self) -> str:
+        """Beyond a quarter wave an interval, where the frozen equation has solutions that vanish at both neighbours."""
+        return "the scheme fitted has no value where sqrt(b)*h reaches pi, b the slope of the source: take more intervals"
+
     def row(self, equation: Equation, unknown: str, shape: Shape) -> Node:
         """((u[k+1] - u[k]) W(p, z) - (u[k] - u[k-1]) W(-p, z))/h^2 + f with p = a h/2, z = b h^2.
 

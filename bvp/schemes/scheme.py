@@ -102,6 +102,11 @@ class Scheme:
         return {}
 
     @property
+    def limits(self) -> str:
+        """Where its rows have no value though the equation has one, and what to do: a sentence, empty where there is no such place."""
+        return ""
+
+    @property
     def weight_powers(self) -> Mapping[str, int]:
         """How each of its nodal weights grows with the length of the domain, where that is a formula of parameters."""
         return {}

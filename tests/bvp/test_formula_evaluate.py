@@ -173,9 +173,12 @@ def exact_cardinal(z: float) -> tuple[Any, Any]:
 @pytest.mark.parametrize("z", GRID)
 def test_cardinal_and_its_slope(z: float) -> None:
     value, slope = exact_cardinal(float(z))
-    # Near a zero of theirs, which they have for z > pi^2 only, what counts is the size of the oscillation.
-    sizes = (max(abs(value), 1 / z), max(abs(slope), 1 / z**1.5)) if z > 9.0 else (abs(value), abs(slope))
     arrays = numpy_functions()
+    if z >= math.pi**2:  # where the fitted scheme, their only use, has no meaning
+        found = [cardinal(z), cardinal_slope(z), *(float(arrays[name](np.array([z]))[0]) for name in ("cardinal", "cardinal_slope"))]
+        assert all(math.isnan(number) for number in found)
+        return
+    sizes = (abs(value), abs(slope))
     for exact, size, found in (
         (value, sizes[0], [cardinal(z), float(arrays["cardinal"](np.array([z]))[0])]),
         (slope, sizes[1], [cardinal_slope(z), float(arrays["cardinal_slope"](np.array([z]))[0])]),

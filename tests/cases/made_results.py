@@ -98,7 +98,12 @@ def found_states(lam: float = 1.0) -> Any:
         for index, b in enumerate(both)
     )
     return SimpleNamespace(
-        asked="equation", at={"lam": lam}, states=states, margin={"turning_point": 2.0, "distance": 2.0 - lam}, complete=True, notes=()
+        asked="equation",
+        at={"lam": lam},
+        states=states,
+        margin={"turning_point": 2.0, "uncertainty": 1e-9, "distance": 2.0 - lam, "past": False, "share": 1.0 - lam / 2.0},
+        complete=True,
+        notes=(),
     )
 
 

@@ -65,8 +65,10 @@ def test_solve_and_reach() -> None:
     assert list(document) == ["asked", "at", "states", "margin", "complete", "notes"]
     assert document["at"] == {"lam": 1.0}
     assert list(document["states"][0]) == ["measures", "unstable_directions", "residual", "uncertainty", "branch"]
-    point = SimpleNamespace(value=1.98, uncertainty=1e-10, measures={"max(u)": 1.2}, refinement=(), on_branch_at=0.8)
-    reached = ReachedMeasure(cylinder(), "max(u) = 1.2", SimpleNamespace(points=(point,)), (), True)
+    more = {"refinement": (), "unstable_directions": 0, "order": 2.0, "survives": True}
+    point = SimpleNamespace(value=1.98, uncertainty=1e-10, measures={"max(u)": 1.2}, **more)
+    found = SimpleNamespace(points=(point,), branch=SimpleNamespace(name="main"))
+    reached = ReachedMeasure(cylinder(), "max(u) = 1.2", found, (), True)
     document = strict(json_text(document_of(reached)))
     assert list(document) == ["case", "title", "scheme", "along", "intervals", "when", "points", "complete", "notes"]
     assert document["points"][0]["value"] == 1.98
