@@ -20,7 +20,8 @@ Array = npt.NDArray[np.float64]
 End = tuple[float, Array, float]  # distance along the base's tangent, state, parameter
 
 MOST_SECANTS = 40
-CLOSE = 1e-6  # of the way between the two ends, from where Newton's method at the value itself goes the rest
+CLOSE = 1e-6  # of the way between the two ends, and
+CLOSER = 1e-2  # of the way to the nearer one, which may be a turning point: from where Newton's method at the value itself goes the rest
 
 
 def crossings(path: Path, before: Point, after: Point, value: float) -> list[Corrected]:
@@ -48,7 +49,7 @@ def distance_of(base: Point, other: Point) -> float:
 
 def _closed_in(path: Path, base: Point, left: End, right: End, value: float) -> Corrected | None:
     bracket = Bracket(left[0], right[0], left[2] - value, right[2] - value, left[1], right[1])
-    first_gap = abs(left[2] - right[2])
+    close = min(CLOSE * abs(left[2] - right[2]), CLOSER * min(abs(left[2] - value), abs(right[2] - value)))
     for _ in range(MOST_SECANTS):
         place = bracket.trial()
         share = bracket.share(place)
@@ -58,7 +59,7 @@ def _closed_in(path: Path, base: Point, left: End, right: End, value: float) -> 
         if not found.ok:
             return None
         gap = found.parameter - value
-        if abs(gap) <= CLOSE * first_gap or bracket.width <= 1e-12 * abs(left[0] - right[0]):
+        if abs(gap) <= close or bracket.width <= 1e-12 * abs(left[0] - right[0]):
             held = held_parameter(path.system, value)
             again = path.counted(correct(path.system, found.u, value, held, base.scales, tolerance=CORRECTED))
             return again if again.ok else None

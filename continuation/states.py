@@ -66,13 +66,17 @@ class Crossings:
     def __init__(self, value: float) -> None:
         self.value = value
         self.found: list[Corrected] = []
+        self.missed = 0
 
     def look(self, path: Path, before: Point, after: Point) -> None:
         """Solve at the value where the step passes it; a point that sits on it belongs to the step that ends there."""
         if after.parameter == self.value:
             self.found.append(after.found)
         elif before.parameter != self.value:
-            self.found += crossings(path, before, after, self.value)
+            here = crossings(path, before, after, self.value)
+            passed = (before.parameter - self.value) * (after.parameter - self.value) < 0.0
+            self.missed += (len(here) % 2 == 1) != passed  # a step that passes the value meets an odd number of states
+            self.found += here
 
 
 def states_at(problem: Problem, *, at: Mapping[str, float], along: str | None = None, discrete: bool = False, **keywords: Any) -> StatesAt:
@@ -138,6 +142,8 @@ def _answer(
     states.sort(key=lambda one: one.measures[first])
     if undecided is not None:
         notes.insert(0, undecided)
+    elif crossings.missed:
+        notes.insert(0, f"{crossings.missed} state(s) at {name} = {value:.12g} could not be closed in on and are not listed.")
     elif not states:
         notes.insert(0, _why_none(branch, name, value, discrete, asked_for.grid.intervals))
     notes.append("only states on the branch traced from its start are listed; others, not connected to it, are not looked for.")
@@ -146,7 +152,7 @@ def _answer(
         at,
         tuple(states),
         _margin(branch, value, discrete),
-        branch.complete and undecided is None,
+        branch.complete and undecided is None and not crossings.missed,
         tuple(dict.fromkeys(notes)),
         branch,
     )

@@ -1,0 +1,88 @@
+"""Grids whose nodes follow a state: when to move them, where to, and the state carried over.
+
+A uniform grid is kept as long as it shows the state; so easy problems stay on it, with its speed and its digits.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+from functools import cached_property
+
+import numpy as np
+import numpy.typing as npt
+
+from bvp.discretize import Discretization, DiscreteSystem, discretization
+from bvp.grid import Grid
+from bvp.monitor import density, is_symmetric
+from bvp.problem import Problem
+from bvp.resample import resampled
+from bvp.schemes import Scheme, named
+from bvp.smooth_map import SmoothMap
+
+Array = npt.NDArray[np.float64]
+
+SEEN = 0.25  # of the density in one interval that a uniform grid may have
+UNEVEN = 2.5  # the largest share over the mean one, from which on a moved grid is moved again
+COARSE, FINE = 0.1, 0.05  # mean share of an interval from which on there are more of them, and the one that there is then
+MOST_GROWTH = 16  # times the intervals asked for
+MOST_MOVES = 12  # of a grid for one state: each makes the narrowest spacing up to twenty times narrower
+
+
+@dataclass(frozen=True)
+class Adaptation:
+    """How the grids of one problem under one scheme follow its states, and from how many intervals on."""
+
+    plain: Discretization
+    intervals: int
+
+    @cached_property
+    def moved(self) -> Discretization:
+        """The same equations on grids that are not uniform."""
+        of = self.plain
+        return discretization(of.problem, of.scheme, of.along, uniform=False, compiled=of.compiled)
+
+    def better(self, system: DiscreteSystem, u: Array, parameter: float) -> DiscreteSystem | None:
+        """The system on the grid that a state needs, one move away from its own; None where its own will do."""
+        shares = self.shares(system, u, parameter)
+        largest, mean = float(shares.max()), float(shares.mean())
+        if not np.isfinite(largest) or largest <= (SEEN if system.grid.uniform else max(UNEVEN * mean, FINE)):
+            return None
+        current = system.grid.map if isinstance(system.grid.map, SmoothMap) else SmoothMap.identity()
+        placed = current.redistributed(shares, is_symmetric(shares))
+        intervals = system.grid.intervals
+        if largest <= UNEVEN * mean and mean > COARSE:
+            intervals = min(2 * int(np.ceil(mean * intervals / FINE / 2)), MOST_GROWTH * self.intervals)
+        return self.moved.on(Grid(intervals, placed), system.values)
+
+    def shares(self, system: DiscreteSystem, u: Array, parameter: float) -> Array:
+        """The density of a state by the index of its nodes."""
+        places = system.places(parameter)
+        return density((places - places[0]) / (places[-1] - places[0]), u[1:-1], system.of.problem.axis)
+
+    def settled(self, system: DiscreteSystem, u: Array, solve: Callable[[DiscreteSystem, Array], Array | None], parameter: float) -> DiscreteSystem:
+        """The system on the grid that a state settles on: moved and solved again until nothing more moves, or a solve fails."""
+        for _ in range(MOST_MOVES):
+            following = self.better(system, u, parameter)
+            if following is None:
+                break
+            found = solve(following, moved_over(u, system, following))
+            if found is None:
+                break
+            system, u = following, found
+        return system
+
+
+def adaptation(problem: Problem, scheme: str | Scheme, along: str | None, intervals: int, compiled: bool) -> Adaptation | None:
+    """How grids adapt to the states of a problem; None where the scheme keeps a uniform grid."""
+    chosen = named(scheme)
+    if chosen.needs_uniform_grid(problem):
+        return None
+    return Adaptation(discretization(problem, chosen, along, uniform=True, compiled=compiled), intervals)
+
+
+def moved_over(nodal: Array, old: DiscreteSystem, new: DiscreteSystem) -> Array:
+    """Nodal values with ghosts on another grid of the same domain."""
+    nodes = new.grid.nodes
+    places = old.grid.map.inverse(nodes) if isinstance(old.grid.map, SmoothMap) else nodes
+    return resampled(nodal[1:-1], places * old.grid.intervals, old.of.problem.axis)
