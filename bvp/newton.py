@@ -19,6 +19,7 @@ Array = npt.NDArray[np.float64]
 
 SMALLEST_DAMPING = 2.0**-20
 ROUNDING = 1e-11  # a correction below this that no longer shrinks is rounding, not failure
+OWN_SIZE, FOR_PARAMETER = 1e-2, 4  # the parameter's correction as a share of itself, and the steps that are spent on it at most
 
 
 class Border(NamedTuple):
@@ -129,7 +130,9 @@ def correct(
 
     while not reason:
         # After a full step with contraction c the next correction is about c times the square of this one over the last.
-        if norm <= tolerance or (damping == 1.0 and taken > 0 and norm * contraction * contraction <= tolerance and contraction < 0.05):
+        close = norm <= tolerance or (damping == 1.0 and taken > 0 and norm * contraction * contraction <= tolerance and contraction < 0.05)
+        # A parameter far below its scale is not seen in the norm; the tangent is that of the last state swept, and its sign counts.
+        if close and (taken >= FOR_PARAMETER or abs(info[0]) <= OWN_SIZE * abs(parameter + info[0])):
             u += system.step
             parameter += float(info[0])
             taken += 1

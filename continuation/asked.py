@@ -8,13 +8,14 @@ from typing import Any
 
 import numpy as np
 
+from bvp.adapt import Adaptation, adaptation
 from bvp.discretize import Discretization, discretization
 from bvp.errors import InputError, ProblemError, nearest
 from bvp.grid import Grid
 from bvp.measures import Measure
 from bvp.problem import Problem
 from bvp.schemes import Scheme
-from continuation.grids import grid_for
+from continuation.grids import ADAPTIVE, grid_for
 from continuation.step_length import FOR_FIGURES, StepLength
 
 DIRECTIONS = {"up": (1.0,), "down": (-1.0,), "both": (-1.0, 1.0)}
@@ -42,6 +43,7 @@ class Asked:
     problem: Problem
     of: Discretization
     grid: Grid
+    adaptation: Adaptation | None
     along: str
     start: float
     signs: tuple[float, ...]
@@ -69,7 +71,7 @@ def asked(
     measure: str | Sequence[str] | None = None,
     scheme: str | Scheme = "central",
     intervals: int = 200,
-    grid: str | Grid = "uniform",
+    grid: str | Grid = "adaptive",
     digits: int | None = 8,
     at: Mapping[str, float] | None = None,
     watch: Watch | None = None,
@@ -97,6 +99,7 @@ def asked(
         problem=stated,
         of=discretization(stated, scheme, name, uniform=used.uniform, compiled=compiled),
         grid=used,
+        adaptation=adaptation(stated, scheme, name, intervals, compiled) if grid == ADAPTIVE else None,
         along=name,
         start=begin,
         signs=DIRECTIONS[direction],

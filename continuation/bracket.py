@@ -41,7 +41,7 @@ class Bracket(Generic[Held]):
 
     def share(self, place: float) -> float:
         """Where a place lies, from 0 at the left to 1 at the right."""
-        return (place - self.left) / (self.right - self.left)
+        return (place - self.left) / (self.right - self.left) if self.right != self.left else 0.0
 
     def take(self, place: float, value: float, held: Held) -> None:
         """The value at a place that was tried takes that of one end."""

@@ -9,15 +9,19 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field
-from typing import Protocol
+from typing import Generic, Protocol, TypeVar
 
 import numpy as np
 
+from bvp.adapt import Adaptation
 from continuation.crossing import crossings, distance_of
 from continuation.detect import MOST_HALVINGS, closes, may_dip
+from continuation.moving import carried_point, moved
 from continuation.path import Path, Point
 from continuation.resolution import resolves, roughness
 from continuation.step_length import StepLength
+
+Kept = TypeVar("Kept")
 
 ROUGH = 0.5  # roughness from which on a finer grid is asked whether the state is real
 ROUGHER = 1.5  # and how much rougher it has to get after a good answer, before it is asked again at once,
@@ -48,18 +52,27 @@ class Limits:
 
 
 @dataclass
-class Followed:
-    """The points of one direction, the first included, and how it ended."""
+class Followed(Generic[Kept]):
+    """What was kept of the points of one direction, the first included, and how it ended."""
 
-    points: list[Point]
+    points: list[Kept]
     ended: str
     reason: str = ""
 
 
 def follow(
-    path: Path, start: Point, rule: StepLength, limits: Limits, detectors: Sequence[Detector], keep: Callable[[Point], Point]
-) -> Followed:
-    """The branch from a point on, step by step; `keep` sees every accepted point and returns what is stored of it."""
+    path: Path,
+    start: Point,
+    rule: StepLength,
+    limits: Limits,
+    detectors: Sequence[Detector],
+    keep: Callable[[Point], Kept],
+    adaptation: Adaptation | None = None,
+) -> Followed[Kept]:
+    """The branch from a point on, step by step; grids follow its states where an adaptation is given.
+
+    `keep` sees every accepted point and returns what is stored of it.
+    """
     points = [keep(start)]
     here, length = start, rule.first
     suspicious, again = ROUGH, 0
@@ -80,14 +93,16 @@ def follow(
                 return Followed(points, ended)
         if edge is not None:
             return Followed(points, WITHIN)
-        rough = roughness(following.u)
-        if rough > suspicious or (rough > ROUGH and len(points) >= again):
-            if not resolves(path, following):
-                return Followed(points, COARSE)
-            suspicious, again = ROUGHER * rough, len(points) + POINTS_BETWEEN
         if len(points) > 6 and closes(start, here, following):
             return Followed(points, CLOSED)
-        here = following
+        system = path.system
+        here = moved(path, following, adaptation)
+        start = carried_point(start, system, path.system)
+        rough = roughness(here.u)
+        if rough > suspicious or (rough > ROUGH and len(points) >= again):
+            if not resolves(path, here):
+                return Followed(points, COARSE)
+            suspicious, again = ROUGHER * rough, len(points) + POINTS_BETWEEN
 
 
 def _next(path: Path, here: Point, length: float, rule: StepLength) -> tuple[Point | None, float, str]:

@@ -7,26 +7,23 @@ from collections.abc import Callable
 import numpy as np
 import numpy.typing as npt
 
-from bvp.errors import InputError
 from bvp.formula import Node, Vocabulary, evaluate, parse
 from bvp.formula.arrays import numpy_functions
 from bvp.formula.tree import Name
 from bvp.grid import Grid
 from bvp.problem import Problem
 
+ADAPTIVE = "adaptive"
+
 Array = npt.NDArray[np.float64]
 
 
 def grid_for(grid: str | Grid, intervals: int, problem: Problem) -> Grid:
-    """The grid: one given as such, "uniform", or a formula of s that maps [0, 1] on itself, such as s^2."""
+    """The grid to begin with: one given as such, a uniform one (which an adaptive grid is at first too), or a formula of s that maps [0, 1] on itself, such as s^2."""
     if isinstance(grid, Grid):
         return grid
-    if grid == "uniform":
+    if grid in ("uniform", ADAPTIVE):
         return Grid(intervals)
-    if grid == "adaptive":
-        raise InputError(
-            'grid "adaptive" is not built yet.\nExpected: "uniform", or the formula of a map of s, such as "s^2" or "sinh(4*s)/sinh(4)".'
-        )
     tree = parse(str(grid), "plain", Vocabulary(unknowns=(), coordinate="s"), f"{problem.origin}, grid")
     return Grid(intervals, _map(tree))
 

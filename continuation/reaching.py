@@ -22,7 +22,7 @@ from continuation.path import Path, Point
 from continuation.records import Branch, Refined
 from continuation.refinement import refined
 from continuation.tracing import setting_of, traced
-from continuation.turning_refined import Setting, measured
+from continuation.turning_refined import Grids, Setting, measured
 
 MOST_SECANTS = 30
 REACHED = 1e-13  # of the distance between the two points that hold the place
@@ -62,6 +62,7 @@ class Place:
 
     found: Corrected
     point: Point
+    system: DiscreteSystem
 
 
 class ValueDetector:
@@ -83,7 +84,7 @@ class ValueDetector:
         right = self.gap(path.system, after.u, after.parameter)
         self._last = (after.arclength, right)
         if left == 0.0 and not known:
-            self.found.append(Place(before.found, before))
+            self.found.append(Place(before.found, before, path.system))
         if not (left * right < 0.0 or (right == 0.0 and left != 0.0)):
             return
         place = self._closed_in(path, before, after, left, right)
@@ -106,7 +107,7 @@ class ValueDetector:
             if gap == 0.0 or bracket.width <= REACHED * far:
                 break
             bracket.take(distance, gap, None)
-        return Place(found, path.point(found, before.arclength + distance, before))
+        return Place(found, path.point(found, before.arclength + distance, before), path.system)
 
 
 def reach(problem: Problem, *, when: str, along: str | None = None, **keywords: Any) -> Reached:
@@ -120,9 +121,7 @@ def reach(problem: Problem, *, when: str, along: str | None = None, **keywords: 
         raise InputError(f'when = "{when}" is no equation.\nExpected: a measure and its value, such as max({problem.unknowns[0]}) = 1.2.')
     detector = ValueDetector(measure, asked_for.of.unknown, asked_for.along)
     branch = traced(asked_for, (detector,))
-    system = asked_for.of.on(asked_for.grid, asked_for.problem.parameters)
-    setting = setting_of(asked_for, system)
-    points = tuple(_refined_place(setting, system, place, detector) for place in detector.found)
+    points = tuple(_refined_place(setting_of(asked_for, place.system), place, detector) for place in detector.found)
     notes = list(branch.notes)
     if not points:
         notes.append(
@@ -131,25 +130,19 @@ def reach(problem: Problem, *, when: str, along: str | None = None, **keywords: 
     return Reached(when, branch.along, points, branch.complete, tuple(notes), branch)
 
 
-def _refined_place(setting: Setting, system: DiscreteSystem, place: Place, detector: ValueDetector) -> ReachedPoint:
-    systems = {system.grid.intervals: system}
-
-    def on(intervals: int) -> DiscreteSystem:
-        if intervals not in systems:
-            systems[intervals] = setting.of.on(setting.grid.refined(intervals), setting.values)
-        return systems[intervals]
-
-    even = setting.of.problem.axis
+def _refined_place(setting: Setting, place: Place, detector: ValueDetector) -> ReachedPoint:
+    system = setting.system
+    on, even = Grids(system).on, system.of.problem.axis
 
     def find(intervals: int, known: Place, known_intervals: int) -> Place | str:
         return _found_again(on(intervals), known, intervals, even, detector)
 
     def values(one: Place, intervals: int) -> dict[str, float]:
-        return {"": one.found.parameter, **measured(setting, on(intervals), one.found.u, one.found.parameter)}
+        return {"": one.found.parameter, **measured(setting.measures, on(intervals), one.found.u, one.found.parameter)}
 
     def repeat(one: Place, intervals: int) -> float:
         disturbed = one.point.u * (1.0 + 1e-9 * np.cos(np.arange(one.point.u.size)))
-        again = _found_again(on(intervals), Place(one.found, _with_state(one.point, disturbed)), intervals, even, detector)
+        again = _found_again(on(intervals), Place(one.found, one.point._replace(u=disturbed), on(intervals)), intervals, even, detector)
         return again.found.parameter if isinstance(again, Place) else one.found.parameter
 
     result = refined(place, system.grid.intervals, find, values, setting.digits or 8, repeat)
@@ -170,10 +163,6 @@ def _refined_place(setting: Setting, system: DiscreteSystem, place: Place, detec
         state=state,
         notes=tuple(notes),
     )
-
-
-def _with_state(point: Point, u: Any) -> Point:
-    return Point(u, point.parameter, point.tangent, point.pace, point.arclength, point.scales, point.found)
 
 
 def _found_again(system: DiscreteSystem, known: Place, intervals: int, even: bool, detector: Sequence[Any] | ValueDetector) -> Place | str:
@@ -198,15 +187,10 @@ def _found_again(system: DiscreteSystem, known: Place, intervals: int, even: boo
             return found.reason
         gap = detector.gap(system, found.u, found.parameter)
         if last is not None and (gap == 0.0 or gap == last[1] or abs(step) <= 1e-13):
-            return Place(found, path.point(found, point.arclength, point_like(base)))
+            return Place(found, path.point(found, point.arclength, base), system)
         move = step if last is None else -gap * (distance - last[0]) / (gap - last[1])
         last, step = (distance, gap), move
         distance += max(-0.3, min(move, 0.3))
         if abs(distance) > 2.0:
             return "the place is too far from that of the neighbouring grid"
     return f"the value was not closed in on within {MOST_SECANTS} secants"
-
-
-def point_like(base: Point) -> Point:
-    """The point whose direction a new tangent is turned to."""
-    return base

@@ -10,6 +10,7 @@ from typing import Any
 import numpy as np
 import numpy.typing as npt
 
+from bvp.adapt import moved_over
 from bvp.discretize import DiscreteSystem
 from bvp.errors import InputError
 from bvp.newton import Corrected
@@ -23,7 +24,7 @@ from continuation.path import Path, Point
 from continuation.records import Branch, TurningPoint
 from continuation.refinement import refined
 from continuation.tracing import setting_of, traced
-from continuation.turning_refined import Setting, measured
+from continuation.turning_refined import Grids, Setting, measured
 
 Array = npt.NDArray[np.float64]
 
@@ -65,18 +66,22 @@ class Crossings:
 
     def __init__(self, value: float) -> None:
         self.value = value
-        self.found: list[Corrected] = []
+        self.found: list[tuple[DiscreteSystem, Corrected]] = []
+        self._begun = False
         self.missed = 0
 
     def look(self, path: Path, before: Point, after: Point) -> None:
         """Solve at the value where the step passes it; a point that sits on it belongs to the step that ends there."""
+        if not self._begun and before.parameter == self.value:
+            self.found.append((path.system, before.found))
+        self._begun = True
         if after.parameter == self.value:
-            self.found.append(after.found)
+            self.found.append((path.system, after.found))
         elif before.parameter != self.value:
             here = crossings(path, before, after, self.value)
             passed = (before.parameter - self.value) * (after.parameter - self.value) < 0.0
             self.missed += (len(here) % 2 == 1) != passed  # a step that passes the value meets an odd number of states
-            self.found += here
+            self.found += [(path.system, one) for one in here]
 
 
 def states_at(problem: Problem, *, at: Mapping[str, float], along: str | None = None, discrete: bool = False, **keywords: Any) -> StatesAt:
@@ -125,13 +130,12 @@ def _answer(
 ) -> StatesAt:
     """The states at a value from the discrete ones that a trace met there."""
     name, value = branch.along, crossings.value
-    system = asked_for.of.on(asked_for.grid, {**asked_for.problem.parameters, name: value})
-    found = _distinct(system, [*(_start_state(system, asked_for.start, value)), *crossings.found])
-    setting = setting_of(asked_for, system)
+    found = _distinct(crossings.found)
     notes = list(branch.notes)
     states = []
-    for corrected in found:
+    for system, corrected in found:
         polished = solved(system, corrected.u, value)
+        setting = setting_of(asked_for, system)
         if not polished.ok:
             notes.append(f"a state near {name} = {value:g} could not be solved to rounding: {polished.reason}")
             continue
@@ -181,41 +185,29 @@ def _range(within: Any, begin: float, value: float) -> Any:
     return min(lowest, value - 0.01 * span), max(highest, value + 0.01 * span)
 
 
-def _start_state(system: DiscreteSystem, start: float, value: float) -> list[Corrected]:
-    if start != value:
-        return []
-    found = solved(system, system.guess(value), value)
-    return [found] if found.ok else []
-
-
-def _distinct(system: DiscreteSystem, found: list[Corrected]) -> list[Corrected]:
+def _distinct(found: Sequence[tuple[DiscreteSystem, Corrected]]) -> list[tuple[DiscreteSystem, Corrected]]:
     """Each state once."""
-    kept: list[Corrected] = []
-    for one in found:
+    kept: list[tuple[DiscreteSystem, Corrected]] = []
+    for system, one in found:
         size = float(np.max(np.abs(one.u[1:-1]))) or 1.0
-        if all(float(np.max(np.abs(one.u - other.u)[1:-1])) > TWICE * size for other in kept):
-            kept.append(one)
+        others = [other.u if held is system else moved_over(other.u, held, system) for held, other in kept]
+        if all(float(np.max(np.abs(one.u - other)[1:-1])) > TWICE * size for other in others):
+            kept.append((system, one))
     return kept
 
 
 def _discrete_state(setting: Setting, system: DiscreteSystem, found: Corrected) -> FoundState:
     state = state_of(system, found)
-    taken = measured(setting, system, found.u, found.parameter)
+    taken = measured(setting.measures, system, found.u, found.parameter)
     return FoundState(taken, dict.fromkeys(taken), state.unstable_directions, state.residual, "main", state)
 
 
 def _real_state(setting: Setting, system: DiscreteSystem, found: Corrected, notes: list[str]) -> FoundState | None:
     """The state of the equation that a discrete state leads to on finer grids; None where it leads to none."""
-    systems = {system.grid.intervals: system}
-    value = found.parameter
-
-    def on(intervals: int) -> DiscreteSystem:
-        if intervals not in systems:
-            systems[intervals] = setting.of.on(setting.grid.refined(intervals), system.values)
-        return systems[intervals]
+    on, value, even = Grids(system).on, found.parameter, system.of.problem.axis
 
     def find(intervals: int, known: Corrected, known_intervals: int) -> Corrected | str:
-        start = carried(known.u, intervals, setting.of.problem.axis)
+        start = carried(known.u, intervals, even)
         again = solved(on(intervals), start, value)
         if not again.ok:
             return again.reason
@@ -223,7 +215,7 @@ def _real_state(setting: Setting, system: DiscreteSystem, found: Corrected, note
         return again if float(np.max(np.abs(again.u - start)[1:-1])) <= 0.3 * size else "the state jumps away there"
 
     def values(one: Corrected, intervals: int) -> dict[str, float]:
-        taken = measured(setting, on(intervals), one.u, value)
+        taken = measured(setting.measures, on(intervals), one.u, value)
         return {"": next(iter(taken.values())), **taken}
 
     def repeat(one: Corrected, intervals: int) -> float:

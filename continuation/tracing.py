@@ -20,7 +20,8 @@ from bvp.problem import Problem
 from bvp.state import State
 from continuation.asked import Asked, Event, asked
 from continuation.follow import COARSE, STOPPED, Detector, Followed, Limits, follow
-from continuation.path import Point
+from continuation.moving import moved
+from continuation.path import Path, Point
 from continuation.records import Branch, TurningPoint
 from continuation.start import first_point, first_state
 from continuation.step_length import ON_THE_WAY
@@ -46,23 +47,22 @@ class Kept:
 class Recorder:
     """Stores points as they come: all their numbers, and as many profiles as the memory set aside for them allows."""
 
-    def __init__(self, asked_for: Asked, system: DiscreteSystem, name: str) -> None:
-        self.asked, self.system, self.name = asked_for, system, name
-        self.setting = setting_of(asked_for, system)
+    def __init__(self, asked_for: Asked, path: Path, name: str) -> None:
+        self.asked, self.path, self.name = asked_for, path, name
         self.count = 0
-        self.most = max(min(asked_for.profiles, PROFILE_BYTES // (8 * system.size)), 2)
+        self.most = max(min(asked_for.profiles, PROFILE_BYTES // (8 * path.system.size)), 2)
         self.every = 1
-        self.profiles: dict[int, tuple[Array, Corrected]] = {}
+        self.profiles: dict[int, tuple[DiscreteSystem, Corrected]] = {}
         self.turning = TurningDetector()
         self.stopped = False
         self.last: Kept | None = None
 
     def __call__(self, point: Point) -> Kept:
         """Store a point, show it to the watch."""
-        taken = measured(self.setting, self.system, point.u, point.parameter)
+        taken = measured(self.asked.measures, self.path.system, point.u, point.parameter)
         kept = Kept(point.parameter, point.arclength, taken, unstable_directions(point.found))
         if self.count % self.every == 0:
-            self.profiles[self.count] = (point.u, point.found)
+            self.profiles[self.count] = (self.path.system, point.found)
             if len(self.profiles) > self.most:
                 self.every *= 2
                 self.profiles = {index: held for index, held in self.profiles.items() if index % self.every == 0}
@@ -79,8 +79,9 @@ class Recorder:
         if self.asked.wanted is not None and len(self.turning.found) >= self.asked.wanted:
             return WANTED
         if self.asked.until is not None:
-            values = {**self.system.values, self.asked.along: point.parameter}
-            if self.asked.until.holds(self.system.places(point.parameter), {self.asked.of.unknown: point.u[1:-1]}, values):
+            system = self.path.system
+            values = {**system.values, self.asked.along: point.parameter}
+            if self.asked.until.holds(system.places(point.parameter), {self.asked.of.unknown: point.u[1:-1]}, values):
                 return UNTIL
         return None
 
@@ -114,9 +115,7 @@ def first_turning_point(problem: Problem, along: str | None = None, *, digits: i
 def setting_of(asked_for: Asked, system: DiscreteSystem, size: float = 1.0) -> Setting:
     """What refining needs of a trace."""
     values = {**system.values, asked_for.along: asked_for.start}
-    return Setting(
-        asked_for.of, asked_for.grid, system.values, asked_for.measures, asked_for.digits, consistency(asked_for.of, size, values)
-    )
+    return Setting(system, asked_for.measures, asked_for.digits, consistency(system.of, size, values))
 
 
 def traced(asked_for: Asked, extra: tuple[Detector, ...] = (), name: str = "main") -> Branch:
@@ -132,21 +131,23 @@ def traced(asked_for: Asked, extra: tuple[Detector, ...] = (), name: str = "main
     steps, sweeps = found.steps, found.sweeps
     sides: list[tuple[Followed, Recorder]] = []
     for sign in asked_for.signs:
-        recorder = Recorder(asked_for, system, name)
         path, point = first_point(system, found, sign)
         path.steps = path.sweeps = 0
+        point = moved(path, point, asked_for.adaptation)
+        recorder = Recorder(asked_for, path, name)
         limits = Limits(asked_for.lowest, asked_for.highest, asked_for.longest, recorder.ended)
-        sides.append((follow(path, point, asked_for.step_length, limits, [recorder.turning, *extra], recorder), recorder))
+        detectors = [recorder.turning, *extra]
+        followed = follow(path, point, asked_for.step_length, limits, detectors, recorder, asked_for.adaptation)
+        sides.append((followed, recorder))
         steps, sweeps = steps + path.steps, sweeps + path.sweeps
         if recorder.stopped or sides[-1][0].ended == "closed loop":
             break
-    return _recorded(asked_for, system, sides, name, (steps, sweeps), began, compiling)
+    return _recorded(asked_for, sides, name, (steps, sweeps), began, compiling)
 
 
 def _recorded(
     asked_for: Asked,
-    system: DiscreteSystem,
-    sides: list[tuple[Followed, Recorder]],
+    sides: list[tuple[Followed[Kept], Recorder]],
     name: str,
     effort: tuple[int, int],
     began: float,
@@ -163,12 +164,12 @@ def _recorded(
         offset = len(points) - 1 if side == 1 else 0
         kept = followed.points if not backwards else followed.points[::-1]
         last = len(kept) - 1
-        for index, (u, corrected) in recorder.profiles.items():
-            place = last - index if backwards else offset + index
-            states[place] = _state(system, u, corrected)
+        for index, (system, corrected) in recorder.profiles.items():
+            states[last - index if backwards else offset + index] = state_of(system, corrected)
         points += [_mirrored(point) for point in kept] if backwards else kept if side == 0 else kept[1:]
-        for located, position in recorder.turning.found:
-            record = turning_point(recorder.setting, located, -position if backwards else position, name)
+        for found in recorder.turning.found:
+            position = -found.position if backwards else found.position
+            record = turning_point(setting_of(asked_for, found.system), found.turning, position, name)
             turnings.append((record.position, record))
         notes += _notes(followed, recorder, asked_for)
         interrupted |= recorder.stopped
@@ -210,11 +211,6 @@ def _notes_on_turning(points: Sequence[TurningPoint]) -> list[str]:
 
 def _mirrored(point: Kept) -> Kept:
     return Kept(point.parameter, -point.arclength, point.measures, point.unstable)
-
-
-def _state(system: DiscreteSystem, u: Array, found: Corrected) -> State:
-    del u
-    return state_of(system, found)
 
 
 def _notes(followed: Followed, recorder: Recorder, asked_for: Asked) -> list[str]:

@@ -9,8 +9,7 @@ import numpy as np
 import numpy.typing as npt
 
 from bvp.consistency import Consistency
-from bvp.discretize import DiscreteSystem, Discretization
-from bvp.grid import Grid
+from bvp.discretize import DiscreteSystem
 from bvp.measures import Measure
 from bvp.one_state import state_of
 from bvp.resample import carried
@@ -25,11 +24,20 @@ Array = npt.NDArray[np.float64]
 SINGULAR_SHIFT = 1e-9  # relative disturbance of the data from which the finest grid is solved a second time
 
 
+@dataclass(frozen=True)
+class Located:
+    """A turning point of a discrete branch, its place along the arclength, and the system whose it is."""
+
+    turning: DiscreteTurning
+    position: float
+    system: DiscreteSystem
+
+
 class TurningDetector:
     """Collects the turning points of the discrete system that lie between neighbouring points of a branch."""
 
     def __init__(self, most: int | None = None) -> None:
-        self.found: list[tuple[DiscreteTurning, float]] = []
+        self.found: list[Located] = []
         self.missed = 0
         self.most = most
 
@@ -42,38 +50,44 @@ class TurningDetector:
             self.missed += 1
             return
         share = abs(before.pace) / (abs(before.pace) + abs(after.pace))
-        self.found.append((located, before.arclength + share * (after.arclength - before.arclength)))
+        position = before.arclength + share * (after.arclength - before.arclength)
+        self.found.append(Located(located, position, path.system))
 
 
 @dataclass(frozen=True)
 class Setting:
-    """What refining needs of a trace: the discretization, its grid, parameter values, measures, digits, consistency."""
+    """What refining needs of a trace: the system that something was found on, measures, digits, consistency."""
 
-    of: Discretization
-    grid: Grid
-    values: Mapping[str, float]
+    system: DiscreteSystem
     measures: Sequence[Measure]
     digits: int | None
     consistency: Consistency
 
 
+class Grids:
+    """The systems on other grids under the map of one, each made once."""
+
+    def __init__(self, system: DiscreteSystem) -> None:
+        self._made = {system.grid.intervals: system}
+        self._first = system
+
+    def on(self, intervals: int) -> DiscreteSystem:
+        """The same equations on so many intervals."""
+        if intervals not in self._made:
+            self._made[intervals] = self._first.of.on(self._first.grid.refined(intervals), self._first.values)
+        return self._made[intervals]
+
+
 def turning_point(setting: Setting, located: DiscreteTurning, position: float, branch: str) -> TurningPoint:
     """The record of a turning point: refined where digits are asked for, the discrete one alone otherwise."""
-    system = setting.of.on(setting.grid, setting.values)
+    system, grids = setting.system, Grids(setting.system)
     notes: list[str] = []
     if setting.digits is None:
         return _record(
             setting, system, located, located.parameter, None, None, (), True, position, branch, located.parameter, {}, {}, notes
         )
 
-    systems: dict[int, DiscreteSystem] = {setting.grid.intervals: system}
-
-    def on(intervals: int) -> DiscreteSystem:
-        if intervals not in systems:
-            systems[intervals] = setting.of.on(setting.grid.refined(intervals), setting.values)
-        return systems[intervals]
-
-    even = setting.of.problem.axis
+    on, even = grids.on, system.of.problem.axis
 
     def find(intervals: int, known: DiscreteTurning, known_intervals: int) -> DiscreteTurning | str:
         u, null = carried(known.u, intervals, even), carried(known.null, intervals, even)
@@ -85,7 +99,7 @@ def turning_point(setting: Setting, located: DiscreteTurning, position: float, b
         return found
 
     def values(found: DiscreteTurning, intervals: int) -> dict[str, float]:
-        taken = measured(setting, on(intervals), found.u, found.parameter)
+        taken = measured(setting.measures, on(intervals), found.u, found.parameter)
         return {"": found.parameter, **taken}
 
     def repeat(found: DiscreteTurning, intervals: int) -> float:
@@ -93,7 +107,7 @@ def turning_point(setting: Setting, located: DiscreteTurning, position: float, b
         again = turning.near(on(intervals), disturbed, found.parameter * (1.0 + SINGULAR_SHIFT), found.null, found.curvature, found.scales)
         return again.parameter if isinstance(again, DiscreteTurning) else found.parameter
 
-    result = refined(located, setting.grid.intervals, find, values, setting.digits, repeat)
+    result = refined(located, system.grid.intervals, find, values, setting.digits, repeat)
     notes += result.notes
     uncertainties = dict(result.uncertainties)
     if setting.consistency.ok is not True and result.survives:
@@ -138,7 +152,7 @@ def _record(
         branch=branch,
         value=value,
         uncertainty=uncertainty,
-        measures=measures or measured(setting, system, located.u, located.parameter),
+        measures=measures or measured(setting.measures, system, located.u, located.parameter),
         states=located.states,
         order=order,
         on_grid=on_grid,
@@ -152,12 +166,12 @@ def _record(
     )
 
 
-def measured(setting: Setting, system: DiscreteSystem, u: Array, parameter: float) -> dict[str, float]:
+def measured(measures: Sequence[Measure], system: DiscreteSystem, u: Array, parameter: float) -> dict[str, float]:
     """The measures of a profile by their text."""
-    profiles = {setting.of.unknown: u[1:-1]}
-    values = {**system.values, setting.of.along: parameter}
+    profiles = {system.of.unknown: u[1:-1]}
+    values = {**system.values, system.of.along: parameter}
     places = system.places(parameter)
-    return {measure.text: measure.value(places, profiles, values) for measure in setting.measures}
+    return {measure.text: measure.value(places, profiles, values) for measure in measures}
 
 
 def sensitivities(system: DiscreteSystem, located: DiscreteTurning) -> dict[str, float | None]:
