@@ -16,6 +16,7 @@ SAFETY = 4.0  # what an estimated truncation error is multiplied by; the campaig
 FAMILIES_SAFETY = 2.0
 SETTLED = 0.15  # how near to a whole number a measured exponent has to be: the next power contributes less than that
 DRIFT = 0.35  # an exponent further off may still be used where it moves towards the whole number from grid to grid
+STEADY = 0.75  # how much an exponent may change from grid to grid to be used at all
 HIGHEST = 14
 ROUNDING = (
     2e-14  # relative, of a sum of a few hundred rounded terms that the solves leave; a chosen floor, far above what was measured (1e-15)
@@ -58,21 +59,37 @@ def usable_exponent(entries: Sequence[float], above: float, floor: float) -> int
     whole = round(last)
     if not above < whole <= HIGHEST:
         return None
-    gap = abs(last - whole)
+    gap, earlier = abs(last - whole), measured_exponent(entries[:-1], floor)
+    if earlier is not None and abs(earlier - last) > STEADY:
+        return None  # one that only passes by a whole number on its way says nothing
     if gap <= SETTLED:
-        earlier = measured_exponent(entries[:-1], floor)
-        return whole if earlier is None or abs(earlier - whole) < 1.5 else None
-    earlier = measured_exponent(entries[:-1], floor)
+        return whole
     if earlier is not None and gap <= DRIFT and gap < 0.6 * abs(earlier - whole):
         return whole
     return None
 
 
+def error_of_last(entries: Sequence[float], whole: int | None, floor: float) -> float:
+    """The error of the last entry: its difference from the one before, over what the exponent to come divides it by.
+
+    That exponent is the settled one; else the last measured less its change from the one before, or less 1 where there
+    is no earlier one; else none, as where the differences do not shrink in one direction: twice the difference then.
+    """
+    gap = abs(entries[-1] - entries[-2])
+    if whole is not None:
+        return gap / (2.0**whole - 1.0)
+    last = measured_exponent(entries, floor)
+    if last is None:
+        return gap if gap <= 8.0 * floor else 2.0 * gap
+    earlier = measured_exponent(entries[:-1], floor)
+    coming = last - (1.0 if earlier is None else abs(last - earlier))
+    return gap / max(2.0**coming - 1.0, 0.5)
+
+
 def limit_of(entries: Sequence[float], floor: float) -> Limit:
     """The best limit of one family of halved steps: of all columns that exponents allow, the one with the least error.
 
-    The error of a column's last entry is that of its last difference, divided by what the next exponent would divide it
-    by where that is measured, and undivided where it is not. At least two entries.
+    At least two entries.
     """
     column = list(entries)
     order = measured_exponent(column, floor)
@@ -82,16 +99,8 @@ def limit_of(entries: Sequence[float], floor: float) -> Limit:
     for depth in range(len(entries)):
         if len(column) < 2:
             break
-        gap = abs(column[-1] - column[-2])
         whole = usable_exponent(column, removed, noise)
-        measured = measured_exponent(column, noise)
-        if whole is not None:
-            error = gap / (2.0**whole - 1.0)
-        elif measured is not None and measured > 0.5:
-            error = gap / (2.0 ** min(measured, removed + 2.0) - 1.0) * 2.0
-        else:
-            error = gap if depth == 0 or gap <= 8.0 * noise else 2.0 * gap
-        error = max(error, noise)
+        error = max(error_of_last(column, whole, noise), noise)
         if best is None or error < best.error:
             best = Limit(column[-1], error, order, depth)
         if whole is None:

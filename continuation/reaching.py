@@ -140,10 +140,10 @@ def _refined_place(setting: Setting, place: Place, detector: ValueDetector) -> R
     def values(one: Place, intervals: int) -> dict[str, float]:
         return {"": one.found.parameter, **measured(setting.measures, on(intervals), one.found.u, one.found.parameter)}
 
-    def repeat(one: Place, intervals: int) -> float:
+    def repeat(one: Place, intervals: int) -> Place:
         disturbed = one.point.u * (1.0 + 1e-9 * np.cos(np.arange(one.point.u.size)))
         again = _found_again(on(intervals), Place(one.found, one.point._replace(u=disturbed), on(intervals)), intervals, even, detector)
-        return again.found.parameter if isinstance(again, Place) else one.found.parameter
+        return again if isinstance(again, Place) else one
 
     result = refined(place, system.grid.intervals, find, values, setting.digits or 8, repeat)
     names = [measure.text for measure in setting.measures]

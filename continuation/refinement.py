@@ -62,7 +62,7 @@ def refined(
     find: Callable[[int, Feature, int], Feature | str],
     measure: Callable[[Feature, int], Mapping[str, float]],
     digits: int | None,
-    repeat: Callable[[Feature, int], float],
+    repeat: Callable[[Feature, int], Feature],
     *,
     most: int = FINEST,
     coarsest: int | None = None,
@@ -70,8 +70,8 @@ def refined(
     """Refine what was found on a grid of `intervals`.
 
     find(N, feature, M) looks on N intervals for the feature known on M, and returns it or a sentence why not. measure
-    gives the numbers to extrapolate, the main one under "". repeat solves the finest again from disturbed data: what it
-    differs by is the rounding of the solves. coarsest : an even number of intervals to begin with. Ends once the main
+    gives the numbers to extrapolate, the main one under "". repeat solves the finest again from disturbed data: what its
+    numbers differ by is the rounding of the solves. coarsest : an even number of intervals to begin with. Ends once the main
     value has its digits, or at `most` intervals.
     """
     base = coarsest or int(np.clip(2 * (intervals // 16), COARSEST, FIRST_COARSE))
@@ -102,7 +102,7 @@ def refined(
     )
     failures = {count: reason for count in grids if (reason := visit(count)) is not None}
     level = LEVELS
-    outcome = _extrapolated(families, values, 0.0)
+    outcome = _extrapolated(families, values, {})
     while level < MOST_LEVELS and (outcome is None or not _enough(outcome, digits)):
         finer = [family.coarsest << level for family in families]
         if finer[0] > min(most, MOST_INTERVALS):
@@ -111,14 +111,15 @@ def refined(
         if len([count for count in finer if count in failures]) == 2 and level >= LEVELS + 2:
             break
         level += 1
-        outcome = _extrapolated(families, values, 0.0)
+        outcome = _extrapolated(families, values, {})
     finest = max(known)
     if outcome is None:
         reason = failures.get(max(failures)) if failures else "too few grids"
         main = values(start, intervals)
         return Refinement(main, dict.fromkeys(main), None, (), False, start, intervals, (f"does not survive refinement: {reason}",))
-    floor = abs(repeat(known[finest], finest) - values(known[finest], finest)[""])
-    outcome = _extrapolated(families, values, floor) or outcome
+    once, again = values(known[finest], finest), measure(repeat(known[finest], finest), finest)
+    floors = {name: abs(again[name] - number) for name, number in once.items()}
+    outcome = _extrapolated(families, values, floors) or outcome
     limits, uncertainties, order, entries = outcome
     survives = _settles(families, values)
     if not survives:
@@ -135,7 +136,7 @@ Outcome = tuple[dict[str, float], dict[str, float | None], float | None, tuple[R
 
 
 def _extrapolated(
-    families: Sequence[Family[Feature]], values: Callable[[Feature, int], Mapping[str, float]], floor: float
+    families: Sequence[Family[Feature]], values: Callable[[Feature, int], Mapping[str, float]], floors: Mapping[str, float]
 ) -> Outcome | None:
     runs = [family.run() for family in families]
     if any(len(run) < 3 for run in runs):
@@ -149,7 +150,7 @@ def _extrapolated(
         if not all(np.all(np.isfinite(column)) for column in columns):
             limits[name], uncertainties[name] = float("nan"), None
             continue
-        limit, uncertainty = combined(columns[0], columns[1], floor if not name else 0.0)
+        limit, uncertainty = combined(columns[0], columns[1], floors.get(name, 0.0))
         limits[name], uncertainties[name] = limit.value, uncertainty
         if not name:
             order = limit.order

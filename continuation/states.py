@@ -218,9 +218,9 @@ def _real_state(setting: Setting, system: DiscreteSystem, found: Corrected, note
         taken = measured(setting.measures, on(intervals), one.u, value)
         return {"": next(iter(taken.values())), **taken}
 
-    def repeat(one: Corrected, intervals: int) -> float:
+    def repeat(one: Corrected, intervals: int) -> Corrected:
         again = solved(on(intervals), one.u * (1.0 + 1e-9 * np.cos(np.arange(one.u.size))), value)
-        return values(again if again.ok else one, intervals)[""]
+        return again if again.ok else one
 
     result = refined(found, system.grid.intervals, find, values, setting.digits or 8, repeat)
     if not result.survives:

@@ -102,10 +102,10 @@ def turning_point(setting: Setting, located: DiscreteTurning, position: float, b
         taken = measured(setting.measures, on(intervals), found.u, found.parameter)
         return {"": found.parameter, **taken}
 
-    def repeat(found: DiscreteTurning, intervals: int) -> float:
+    def repeat(found: DiscreteTurning, intervals: int) -> DiscreteTurning:
         disturbed = found.u * (1.0 + SINGULAR_SHIFT * np.cos(np.arange(found.u.size)))
         again = turning.near(on(intervals), disturbed, found.parameter * (1.0 + SINGULAR_SHIFT), found.null, found.curvature, found.scales)
-        return again.parameter if isinstance(again, DiscreteTurning) else found.parameter
+        return again if isinstance(again, DiscreteTurning) else found
 
     result = refined(located, system.grid.intervals, find, values, setting.digits, repeat)
     notes += result.notes

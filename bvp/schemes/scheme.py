@@ -70,11 +70,17 @@ class Scheme:
         return in_names_of(tree, problem, unknown)
 
     def replaced_terms(self, problem: Problem, unknown: str) -> list[tuple[Node, Node]]:
-        """Its pairs of a term and what stands for it."""
+        """Its pairs of a term, written as in the equation, and what stands for it."""
         pairs = []
+        own, known = problem.vocabulary, (*problem.unknowns, problem.coordinate, *problem.parameters, *problem.where)
+        stand_ins = replace(
+            own,
+            unknowns=(*own.unknowns, *({"u"} - set(known))),
+            parameters=(*own.parameters, *({"x"} - set(known))),
+        )
         for term, text in self.replacements.items():
             place = f"{self.origin or self.name}, replace"
-            left, right = (parse(side, "scheme", problem.vocabulary, place) for side in (term, text))
+            left, right = parse(term, "equation", stand_ins, place), parse(text, "scheme", own, place)
             pairs.append((in_names_of(left, problem, unknown), in_names_of(right, problem, unknown)))
         return pairs
 
