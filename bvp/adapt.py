@@ -14,7 +14,7 @@ import numpy.typing as npt
 
 from bvp.discretize import Discretization, DiscreteSystem, discretization
 from bvp.grid import Grid
-from bvp.monitor import density, is_symmetric
+from bvp.monitor import density, is_symmetric, roughness
 from bvp.problem import Problem
 from bvp.resample import resampled
 from bvp.schemes import Scheme, named
@@ -22,6 +22,7 @@ from bvp.smooth_map import SmoothMap
 
 Array = npt.NDArray[np.float64]
 
+SMOOTH = 2e-3  # roughness below which a uniform grid is not looked at further: nothing in the state is narrower than some ten steps
 SEEN = 0.25  # of the density in one interval that a uniform grid may have
 UNEVEN = 2.5  # the largest share over the mean one, from which on a moved grid is moved again
 COARSE, FINE = 0.1, 0.05  # mean share of an interval from which on there are more of them, and the one that there is then
@@ -44,6 +45,8 @@ class Adaptation:
 
     def better(self, system: DiscreteSystem, u: Array, parameter: float) -> DiscreteSystem | None:
         """The system on the grid that a state needs, one move away from its own; None where its own will do."""
+        if system.grid.uniform and roughness(u) < SMOOTH:
+            return None
         shares = self.shares(system, u, parameter)
         largest, mean = float(shares.max()), float(shares.mean())
         if not np.isfinite(largest) or largest <= (SEEN if system.grid.uniform else max(UNEVEN * mean, FINE)):
@@ -60,7 +63,9 @@ class Adaptation:
         places = system.places(parameter)
         return density((places - places[0]) / (places[-1] - places[0]), u[1:-1], system.of.problem.axis)
 
-    def settled(self, system: DiscreteSystem, u: Array, solve: Callable[[DiscreteSystem, Array], Array | None], parameter: float) -> DiscreteSystem:
+    def settled(
+        self, system: DiscreteSystem, u: Array, solve: Callable[[DiscreteSystem, Array], Array | None], parameter: float
+    ) -> DiscreteSystem:
         """The system on the grid that a state settles on: moved and solved again until nothing more moves, or a solve fails."""
         for _ in range(MOST_MOVES):
             following = self.better(system, u, parameter)

@@ -15,7 +15,6 @@ from dataclasses import dataclass
 SAFETY = 4.0  # what an estimated truncation error is multiplied by; the campaign of tests found no miss at 2
 FAMILIES_SAFETY = 2.0
 SETTLED = 0.15  # how near to a whole number a measured exponent has to be: the next power contributes less than that
-DRIFT = 0.35  # an exponent further off may still be used where it moves towards the whole number from grid to grid
 STEADY = 0.75  # how much an exponent may change from grid to grid to be used at all
 HIGHEST = 14
 ROUNDING = (
@@ -62,11 +61,7 @@ def usable_exponent(entries: Sequence[float], above: float, floor: float) -> int
     gap, earlier = abs(last - whole), measured_exponent(entries[:-1], floor)
     if earlier is not None and abs(earlier - last) > STEADY:
         return None  # one that only passes by a whole number on its way says nothing
-    if gap <= SETTLED:
-        return whole
-    if earlier is not None and gap <= DRIFT and gap < 0.6 * abs(earlier - whole):
-        return whole
-    return None
+    return whole if gap <= SETTLED else None
 
 
 def error_of_last(entries: Sequence[float], whole: int | None, floor: float) -> float:

@@ -12,6 +12,7 @@ Array = npt.NDArray[np.float64]
 STEEPNESS = 0.25  # of the largest slope: below this share of it a change of the slope counts less and less
 FLAT = 1e-9  # range of a state relative to its size, below which its shape is rounding
 GRADING = 4.0  # of the length of one share, by the distance from where it is short
+FEWEST = 6  # intervals below which nothing is said of roughness
 SMOOTHING = 2  # passes of (1, 2, 1)/4
 
 
@@ -51,3 +52,18 @@ def graded(x: Array, shares: Array) -> Array:
 def is_symmetric(shares: Array) -> bool:
     """Whether a density mirrors about the middle."""
     return bool(np.max(np.abs(shares - shares[::-1])) <= 1e-5 * np.max(shares))
+
+
+def roughness(u: Array) -> float:
+    """The largest fourth difference of nodal values over their largest second difference.
+
+    About (h/l)^2 where the state changes over lengths l, and 2 where a peak stands on one node.
+    """
+    if u.size < FEWEST + 3:
+        return 0.0
+    first = u[2:-1] - u[1:-2]
+    second = first[1:] - first[:-1]
+    third = second[1:] - second[:-1]
+    fourth = third[1:] - third[:-1]
+    largest = max(float(second.max()), -float(second.min()))
+    return max(float(fourth.max()), -float(fourth.min())) / largest if largest > 0.0 else 0.0

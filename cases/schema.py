@@ -60,7 +60,7 @@ TRACE: Mapping[str, Key] = {
 DISCRETIZATION: Mapping[str, Key] = {
     "scheme": Key("text", "a built-in scheme's name, or a name under [scheme]", default="central"),
     "intervals": Key("whole number", "N, where the work starts", default=200, least=2, most=MOST_INTERVALS),
-    "grid": Key("text", "adaptive, uniform, or a map of s in [0, 1] onto the domain's share", default="uniform"),
+    "grid": Key("text", "adaptive, uniform, or a map of s in [0, 1] onto the domain's share", default="adaptive"),
     "digits": Key("whole number", "digits wanted of each turning point", default=8, least=1, most=MOST_DIGITS),
 }
 

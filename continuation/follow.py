@@ -14,11 +14,12 @@ from typing import Generic, Protocol, TypeVar
 import numpy as np
 
 from bvp.adapt import Adaptation
+from bvp.monitor import roughness
 from continuation.crossing import crossings, distance_of
 from continuation.detect import MOST_HALVINGS, closes, may_dip
 from continuation.moving import carried_point, moved
 from continuation.path import Path, Point
-from continuation.resolution import resolves, roughness
+from continuation.resolution import resolves
 from continuation.step_length import StepLength
 
 Kept = TypeVar("Kept")

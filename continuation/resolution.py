@@ -10,23 +10,7 @@ from continuation.path import Path, Point
 
 Array = npt.NDArray[np.float64]
 
-FEWEST = 6  # intervals below which nothing can be said
 MOST_CHANGE = 0.15  # of the state's range or the parameter's value, between the two grids
-
-
-def roughness(u: Array) -> float:
-    """The largest fourth difference of nodal values over their largest second difference.
-
-    About (h/l)^2 where the state changes over lengths l, and 2 where a peak stands on one node.
-    """
-    if u.size < FEWEST + 3:
-        return 0.0
-    first = u[2:-1] - u[1:-2]
-    second = first[1:] - first[:-1]
-    third = second[1:] - second[:-1]
-    fourth = third[1:] - third[:-1]
-    largest = max(float(second.max()), -float(second.min()))
-    return max(float(fourth.max()), -float(fourth.min())) / largest if largest > 0.0 else 0.0
 
 
 def resolves(path: Path, point: Point) -> bool:

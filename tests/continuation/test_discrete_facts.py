@@ -28,7 +28,9 @@ FOURTH_ORDER = {"right_hand_side": "(f[k-1] + 10*f[k] + f[k+1])/12"}
 def own(problem: Problem, scheme: str | Mapping[str, object], intervals: int, **keywords: object) -> float:
     """The first turning point that a scheme has on exactly so many intervals; a mapping is a typed scheme."""
     used: str | Scheme = scheme if isinstance(scheme, str) else typed("mine", scheme, problem)
-    point = continuation.turning_point(problem, along="lam", scheme=used, intervals=intervals, digits=None, compiled=False, **keywords)
+    point = continuation.turning_point(
+        problem, along="lam", scheme=used, intervals=intervals, grid="uniform", digits=None, compiled=False, **keywords
+    )
     return point.on_grid
 
 
@@ -145,7 +147,7 @@ def test_central_scheme_against_its_dense_twin(geometry: str, exponent: int, bi:
         exponent=exponent,
     )
     branch = continuation.trace(
-        body(geometry, bi=bi), along="lam", intervals=intervals, digits=None, turning_points_wanted=1, compiled=False
+        body(geometry, bi=bi), along="lam", intervals=intervals, grid="uniform", digits=None, turning_points_wanted=1, compiled=False
     )
     point = branch.turning_points[0]
     assert point.state is not None
@@ -165,6 +167,7 @@ def test_exactly_solvable_scheme_has_its_closed_form_at_every_node(lam: float) -
         scheme=typed("logarithmic", LOGARITHMIC, problem),
         intervals=8,
         discrete=True,
+        grid="uniform",
         until="max(u) > 12",
         compiled=False,
     )
@@ -182,7 +185,7 @@ def test_exactly_solvable_scheme_has_its_closed_form_at_every_node(lam: float) -
 
 def test_states_of_three_and_four_intervals() -> None:
     # The states that are alike on both sides; the other two pairs lie on branches that leave this one at a pitchfork.
-    keywords = {"discrete": True, "within": (-1.0, 4.0), "until": "max(u) > 15", "compiled": False}
+    keywords = {"discrete": True, "grid": "uniform", "within": (-1.0, 4.0), "until": "max(u) > 15", "compiled": False}
     three = continuation.states_at(interval(), at={"lam": 1.0}, intervals=3, **keywords)  # type: ignore[arg-type]
     for found, known in zip(three.states, CENTRAL_STATES_THREE_INTERVALS["lam 1"][:2], strict=True):
         assert found.state.u[1:-1] == pytest.approx(known, abs=1e-8)
@@ -193,7 +196,9 @@ def test_states_of_three_and_four_intervals() -> None:
 
 
 def test_branch_of_two_intervals_is_its_closed_form_over_hundreds_of_decades() -> None:
-    branch = continuation.trace(interval(), measure="u(1/2)", intervals=2, digits=None, until="u(1/2) > 600", compiled=False)
+    branch = continuation.trace(
+        interval(), measure="u(1/2)", intervals=2, grid="uniform", digits=None, until="u(1/2) > 600", compiled=False
+    )
     u = branch.measure("u(1/2)")
     assert u[-1] > 600
     assert branch.parameter == pytest.approx(8 * u * np.exp(-u), rel=1e-7, abs=0.0)  # points on the way are solved to 1e-9 of u
@@ -203,7 +208,7 @@ def test_branch_of_two_intervals_is_its_closed_form_over_hundreds_of_decades() -
 
 def test_the_scheme_loses_states_that_the_equation_has() -> None:
     # Its own turning point on 10 intervals lies below 3.5 (3.4954…), that of the equation above.
-    scheme = continuation.states_at(interval(), at={"lam": 3.5}, intervals=10, discrete=True, compiled=False)
+    scheme = continuation.states_at(interval(), at={"lam": 3.5}, intervals=10, grid="uniform", discrete=True, compiled=False)
     assert scheme.states == ()
     assert "10 intervals" in scheme.notes[0]
     assert "3.495493294" in scheme.notes[0]

@@ -34,11 +34,12 @@ PROBLEMS: dict[str, tuple[Problem, tuple[str, ...]]] = {
 }
 
 
+@pytest.mark.parametrize("grid", ["uniform", "adaptive"])
 @pytest.mark.parametrize("scheme", SCHEMES)
 @pytest.mark.parametrize("name", PROBLEMS)
-def test_known_value_is_within_a_narrow_uncertainty(name: str, scheme: str) -> None:
+def test_known_value_is_within_a_narrow_uncertainty(name: str, scheme: str, grid: str) -> None:
     problem, names = PROBLEMS[name]
-    branch = continuation.trace(problem, along="lam", scheme=scheme, digits=9, turning_points_wanted=len(names), compiled=False)
+    branch = continuation.trace(problem, along="lam", scheme=scheme, grid=grid, digits=9, turning_points_wanted=len(names), compiled=False)
     assert len(branch.turning_points) == len(names)
     assert branch.ended == "turning points wanted"
     for point, known in zip(branch.turning_points, (KNOWN[one] for one in names), strict=True):
