@@ -12,7 +12,8 @@ from functools import cached_property
 import numpy as np
 import numpy.typing as npt
 
-from bvp.discretize import Discretization, DiscreteSystem, discretization
+from bvp.discretize import DiscreteSystem, Discretization, discretization
+from bvp.errors import InputError
 from bvp.grid import Grid
 from bvp.monitor import density, is_symmetric, roughness
 from bvp.problem import Problem
@@ -25,6 +26,7 @@ Array = npt.NDArray[np.float64]
 SMOOTH = 2e-3  # roughness below which a uniform grid is not looked at further: nothing in the state is narrower than some ten steps
 SEEN = 0.25  # of the density in one interval that a uniform grid may have
 UNEVEN = 2.5  # the largest share over the mean one, from which on a moved grid is moved again
+FEWEST = 8  # intervals below which a grid stays as it was asked for
 COARSE, FINE = 0.1, 0.05  # mean share of an interval from which on there are more of them, and the one that there is then
 MOST_GROWTH = 16  # times the intervals asked for
 MOST_MOVES = 12  # of a grid for one state: each makes the narrowest spacing up to twenty times narrower
@@ -45,7 +47,7 @@ class Adaptation:
 
     def better(self, system: DiscreteSystem, u: Array, parameter: float) -> DiscreteSystem | None:
         """The system on the grid that a state needs, one move away from its own; None where its own will do."""
-        if system.grid.uniform and roughness(u) < SMOOTH:
+        if system.grid.intervals < FEWEST or (system.grid.uniform and roughness(u) < SMOOTH):
             return None
         shares = self.shares(system, u, parameter)
         largest, mean = float(shares.max()), float(shares.mean())
@@ -56,7 +58,12 @@ class Adaptation:
         intervals = system.grid.intervals
         if largest <= UNEVEN * mean and mean > COARSE:
             intervals = min(2 * int(np.ceil(mean * intervals / FINE / 2)), MOST_GROWTH * self.intervals)
-        return self.moved.on(Grid(intervals, placed), system.values)
+        grid = Grid(intervals, placed)
+        try:
+            _ = grid.nodes
+        except InputError:  # steps below the rounding of the coordinate: no grid in this arithmetic resolves the state
+            return None
+        return self.moved.on(grid, system.values)
 
     def shares(self, system: DiscreteSystem, u: Array, parameter: float) -> Array:
         """The density of a state by the index of its nodes."""

@@ -47,6 +47,8 @@ def solve(case: Case, at: Mapping[str, float], *, discrete: bool = False, watch:
     # The traced parameter's start stays the case's: the branch is followed from there to the value asked for.
     problem = problem_of(case)
     keywords = _for_states(trace_keywords(case, problem), value)
+    if discrete and keywords["grid"] == "adaptive":
+        keywords["grid"] = "uniform"  # the question is about the scheme on the grid asked for
     found = continuation.states_at(problem, at={along: value}, discrete=discrete, watch=watch, **keywords)
     notes = _once([*problem.notices, *found.notes])
     found = replace(found, at={**case.parameters, along: value})

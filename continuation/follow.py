@@ -84,6 +84,11 @@ def follow(
         if following is None:
             return Followed(points, STUCK, reason)
         edge = _edge(path, here, following, limits)
+        if edge is None and not limits.lowest <= following.parameter <= limits.highest:
+            length = 0.5 * (following.arclength - here.arclength)  # the state on the edge was not found: come nearer to it
+            if length < rule.smallest:
+                return Followed(points, WITHIN)
+            continue
         stretch = _looked_into(path, here, edge or following, 0)
         for before, after in zip([here, *stretch], stretch, strict=False):
             for detector in detectors:

@@ -4,7 +4,10 @@ from __future__ import annotations
 
 from bvp.adapt import MOST_MOVES, Adaptation, moved_over
 from bvp.discretize import DiscreteSystem
+from bvp.newton import Scales
 from continuation.path import Path, Point
+
+LEAST_SIZE = 1e-100  # of a parameter: its square is still a number
 
 
 def moved(path: Path, point: Point, adaptation: Adaptation | None) -> Point:
@@ -18,6 +21,9 @@ def moved(path: Path, point: Point, adaptation: Adaptation | None) -> Point:
         if system is None:
             break
         base = carried_point(point, path.system, system)
+        # A parameter far below the way it has come is held by its own size: the state stays where it is on the branch.
+        own = max(min(base.scales.parameter, abs(point.parameter) or base.scales.parameter), LEAST_SIZE)
+        base = base._replace(scales=Scales(base.scales.state, own))
         began = moved_over(path.began[0], path.system, system)
         old, path.system = path.system, system
         found = path.step_from(base, 0.0)

@@ -99,6 +99,8 @@ def states_at(problem: Problem, *, at: Mapping[str, float], along: str | None = 
         raise InputError(f"at {name} = {value}.\nExpected: a finite number.")
     others = {other: number for other, number in at.items() if other != name}
     begin = problem.parameters[name] if keywords.get("start") is None else float(keywords["start"])
+    if discrete:
+        keywords = {"grid": "uniform", **keywords}  # the question is about the scheme on the grid asked for
     keywords = {**keywords, "direction": _direction(begin, value, keywords.get("direction"))}
     keywords.pop("turning_points_wanted", None)
     asked_for = asked(problem, name, at=others, **{**keywords, "within": _range(keywords.get("within"), begin, value)})

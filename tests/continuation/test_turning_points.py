@@ -81,7 +81,8 @@ def test_printed_values_of_handbooks_agree_to_the_digits_they_print() -> None:
 
 @pytest.mark.parametrize("power", [1.0, 2.0, 3.0])
 def test_source_with_a_power_of_the_radius(power: float) -> None:
-    # x = s^(2/(2+a)) takes x^a away and leaves the factor ((2+a)/2)^2: the turning point of a disk is multiplied by (1 + a/2)^2 exactly (change of variable).
+    # x = s^(2/(2+a)) takes x^a away and leaves the factor ((2+a)/2)^2 with the source: the turning point of a disk is
+    # multiplied by (1 + a/2)^2 exactly (change of variable).
     problem = body("cylinder", "lam*x^a/(1-u)^2", a=power)
     point = continuation.turning_point(problem, along="lam", digits=7, compiled=False)
     known, factor = KNOWN["disk, membrane, turning point 1"], (1 + power / 2) ** 2
