@@ -62,14 +62,15 @@ def placed_condition(
     condition = Condition(transform(tree, placed), text, origin)
     if not condition.sides and "integral" not in text:
         raise ProblemError(
-            f'{origin}: "{text}" holds no unknown at an end.\nExpected: something like u(0) = 0 or u\'({write(ends[1])}) + u({write(ends[1])}) = 0.'
+            f'{origin}: "{text}" holds no unknown at an end.\n'
+            f"Expected: something like u(0) = 0 or u'({write(ends[1])}) + u({write(ends[1])}) = 0."
         )
     return condition
 
 
 def same_number(left: Node, right: Node, parameters: Mapping[str, float]) -> bool:
     """Whether two formulas of parameters have the same value."""
-    values = [evaluate(side, lambda leaf: parameters[leaf.name], float_functions()) for side in (left, right)]  # type: ignore[attr-defined]
+    values = [evaluate(side, lambda leaf: parameters[leaf.name], float_functions()) for side in (left, right)]
     return bool(abs(values[0] - values[1]) <= 1e-12 * max(abs(values[0]), abs(values[1]), 1e-300))
 
 
@@ -81,8 +82,9 @@ def without_axis(conditions: Sequence[Condition], coordinate: str) -> list[Condi
             kept.append(condition)
         elif not (isinstance(condition.tree, At) and isinstance(condition.tree.operand, Prime) and condition.tree.operand.order == 1):
             raise ProblemError(
-                f'{condition.origin}: "{condition.text}" stands at {coordinate} = 0, the axis of the cylinder or the centre of the sphere.\n'
-                "There only a zero derivative is possible, and it is understood.\nLeave the condition out, or start the domain at a positive radius."
+                f'{condition.origin}: "{condition.text}" stands at {coordinate} = 0, '
+                "the axis of the cylinder or the centre of the sphere.\nThere only a zero derivative is possible, and it is understood.\n"
+                "Leave the condition out, or start the domain at a positive radius."
             )
     return kept
 

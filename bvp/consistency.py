@@ -42,14 +42,14 @@ def consistency(of: Discretization, size: float, values: Mapping[str, float]) ->
 def _consistency(of: Discretization, size: float, values: Mapping[str, float]) -> Consistency:
     if of.scheme.weight_powers:
         return Consistency(True)  # weights by node are no series; the built-in scheme that has them is exact for quartics
-    rows = [("the difference equation", of.rows.inner.residual, None, False)]
+    rows: list[tuple[str, Node, Node | None, bool]] = [("the difference equation", of.rows.inner.residual, None, False)]
     if of.rows.left_kind == AXIS:
         rows.append(("the difference equation at the axis", of.rows.first().residual, None, True))
     for condition in of.problem.conditions:
         side = next(iter(condition.sides))
-        row = of.rows.left if side == "left" else of.rows.right
-        assert row is not None
-        rows.append((f'the difference form of "{condition.text}"', row.residual, condition.tree, False))
+        end = of.rows.left if side == "left" else of.rows.right
+        assert end is not None
+        rows.append((f'the difference form of "{condition.text}"', end.residual, condition.tree, False))
     try:
         for what, row, condition_tree, axis in rows:
             factors = [_factor(of, row, condition_tree, axis, size, values, seed) for seed in range(PROFILES)]

@@ -10,6 +10,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass
 from functools import cached_property
+from typing import Any
 
 import numpy as np
 import numpy.typing as npt
@@ -51,7 +52,7 @@ class Grid:
         """Reference coordinates of the faces, shape (N + 2,)."""
         return self._placed(np.arange(-1, self.intervals + 1) + 0.5)
 
-    def _placed(self, steps: Array) -> Array:
+    def _placed(self, steps: npt.NDArray[np.floating[Any]]) -> Array:
         if self.map is None:
             return steps / self.intervals
         placed = np.asarray(self.map(steps / self.intervals), dtype=float)
@@ -84,5 +85,5 @@ def check_intervals(intervals: object) -> None:
     if not FEWEST_INTERVALS <= intervals <= MOST_INTERVALS:
         raise InputError(
             f"intervals = {intervals} is outside {FEWEST_INTERVALS} to {MOST_INTERVALS}.\n"
-            "Expected: how many intervals the domain is cut into; 200 is a good start, since turning points are extrapolated from several grids."
+            "Expected: how many intervals the domain is cut into; 200 is a good start, since values are extrapolated from several grids."
         )

@@ -64,7 +64,8 @@ class Measure:
             if stray:
                 name = stray[0]
                 raise InputError(
-                    f'{self.place}: "{self.text}" holds {name} without a place.\nExpected: max({name}), {name}(…) at a place, mean({name}) or the like.'
+                    f'{self.place}: "{self.text}" holds {name} without a place.\n'
+                    f"Expected: max({name}), {name}(…) at a place, mean({name}) or the like."
                 )
         for node in self._parts.values():
             if isinstance(node, Call):
@@ -129,7 +130,8 @@ class Measure:
         span = places[-1] - places[0]
         if not places[0] - 1e-12 * span <= x <= places[-1] + 1e-12 * span:
             raise InputError(
-                f'{self.place}: "{self.text}" looks at {x:g}, outside of the domain {places[0]:g} to {places[-1]:g}.\nExpected: a place inside.'
+                f'{self.place}: "{self.text}" looks at {x:g}, outside of the domain {places[0]:g} to {places[-1]:g}.\n'
+                "Expected: a place inside."
             )
         x = min(max(x, float(places[0])), float(places[-1]))
         even = self.problem.axis
@@ -137,7 +139,8 @@ class Measure:
         operand = node.operand
         if isinstance(operand, Name):
             return at_index(profiles[operand.name], position, even)
-        assert isinstance(operand, Prime) and isinstance(operand.operand, Name)
+        assert isinstance(operand, Prime)
+        assert isinstance(operand.operand, Name)
         profile = profiles[operand.operand.name]
         slope = at_index(places, position, order=1)
         first = at_index(profile, position, even, order=1) / slope

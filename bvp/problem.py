@@ -73,7 +73,10 @@ class Problem:
         origin: str = "problem",
         functions: Mapping[str, GivenFunction] | None = None,
     ) -> None:
-        put = lambda name, value: object.__setattr__(self, name, value)  # noqa: E731  (a frozen record fills itself once)
+
+        def put(name: str, value: object) -> None:
+            object.__setattr__(self, name, value)  # a frozen record fills itself once
+
         unknown_names = _listed(unknowns)
         coordinate, left, right = domain if domain is not None else ("x", *x)
         if geometry not in EXPONENTS:
@@ -135,7 +138,8 @@ class Problem:
         origin = self.origin
         if len(texts) != len(self.unknowns):
             raise ProblemError(
-                f"{origin}: {len(self.unknowns)} unknown{'s' * (len(self.unknowns) != 1)} ({', '.join(self.unknowns)}) but {len(texts)} equations.\n"
+                f"{origin}: {len(self.unknowns)} unknown{'s' * (len(self.unknowns) != 1)} ({', '.join(self.unknowns)}) "
+                f"but {len(texts)} equations.\n"
                 "Expected: one equation for each unknown, in the order of the unknowns."
             )
         left, right = self.end_values(self.parameters)
@@ -223,7 +227,7 @@ class Problem:
 
     def number(self, tree: Node, parameters: Mapping[str, float]) -> float:
         """The value of a formula of parameters."""
-        return float(evaluate(tree, lambda leaf: parameters[leaf.name], self.function_table(float_functions())))  # type: ignore[attr-defined]
+        return float(evaluate(tree, lambda leaf: parameters[leaf.name], self.function_table(float_functions())))
 
     def function_table(self, table: Mapping[str, Callable[..., Any]]) -> dict[str, Callable[..., Any]]:
         """A table of functions for `evaluate`, the measured and given ones among them."""
@@ -303,7 +307,7 @@ def _listed(texts: Texts) -> tuple[str, ...]:
 def _number(value: object, origin: str) -> float:
     if isinstance(value, bool) or (not isinstance(value, (int, float)) and not hasattr(value, "__float__")):
         raise ProblemError(f"{origin} is {value!r}.\nExpected: a number.")
-    number = float(value)  # type: ignore[arg-type]
+    number = float(value)
     if not math.isfinite(number):
         raise ProblemError(f"{origin} is {number}.\nExpected: a finite number.")
     return number
@@ -317,7 +321,8 @@ def _where(texts: Mapping[str, str], vocabulary: Vocabulary, origin: str) -> dic
     def resolve(name: str, above: tuple[str, ...]) -> Node:
         if name in above:
             raise ProblemError(
-                f"{origin}, where: {' needs '.join([*above, name])}, a circle.\nExpected: formulas that can be worked out one after the other."
+                f"{origin}, where: {' needs '.join([*above, name])}, a circle.\n"
+                "Expected: formulas that can be worked out one after the other."
             )
         if name not in done:
             put_in = transform(

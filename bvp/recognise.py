@@ -46,7 +46,7 @@ def _plain_form(tree: Node, unknown: str, coordinate: str, functions: Functions)
     exponent = exponents.pop() if len(exponents) == 1 else None
     if exponent not in (1, 2):
         return tree, 0
-    replaced = {first: Number(0.0), second: Call("laplacian", (Name(unknown),))}
+    replaced: dict[Node, Node] = {first: Number(0.0), second: Call("laplacian", (Name(unknown),))}
     return folded(transform(tree, replaced.get)), exponent
 
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from functools import lru_cache
+from typing import Any
 
 import numpy as np
 import numpy.typing as npt
@@ -37,7 +38,7 @@ def _between(old: int, intervals: int, even: bool) -> tuple[npt.NDArray[np.int64
 _remembered = lru_cache(maxsize=64)(_between)  # a branch's grids are the same for each of its turning points
 
 
-def _weights(count: int, positions: Array, even: bool) -> tuple[npt.NDArray[np.int64], Array]:
+def _weights(count: int, positions: npt.NDArray[Any], even: bool) -> tuple[npt.NDArray[np.int64], Array]:
     """The first node of each position's polynomial, and the weights of its nodes, shape (points, positions)."""
     reach = POINTS // 2 if even and count > POINTS // 2 else 0
     held = count + reach

@@ -90,7 +90,8 @@ def rows_of(problem: Problem, scheme: Scheme, along: str, uniform: bool) -> Rows
         if len(here) != wanted:
             shown = "; ".join(condition.text for condition in here) or "none"
             raise ProblemError(
-                f"{problem.origin}, conditions: {len(here)} at the {side} end ({shown}), which is not built yet.\nExpected: one condition at each end."
+                f"{problem.origin}, conditions: {len(here)} at the {side} end ({shown}), which is not built yet.\n"
+                "Expected: one condition at each end."
             )
         ends[side] = here[0] if here else None
     right = ends[RIGHT]
@@ -113,7 +114,8 @@ def only_unknown(problem: Problem) -> str:
         raise ProblemError(f"{problem.origin}: {len(problem.unknowns)} unknowns; systems are not built yet.\nExpected: one unknown.")
     if problem.equations[0].order != 2:
         raise ProblemError(
-            f'{problem.origin}: "{problem.equations[0].text}" is of order {problem.equations[0].order}, which is not built yet.\nExpected: an equation of second order.'
+            f'{problem.origin}: "{problem.equations[0].text}" is of order {problem.equations[0].order}, which is not built yet.\n'
+            "Expected: an equation of second order."
         )
     return problem.unknowns[0]
 
@@ -131,10 +133,12 @@ def _condition_row(condition: Condition, side: str, scheme: Scheme, problem: Pro
         inside = node.operand
         if isinstance(inside, Name):
             return Indexed(inside.name, Fraction(0))
-        assert isinstance(inside, Prime) and isinstance(inside.operand, Name)
+        assert isinstance(inside, Prime)
+        assert isinstance(inside.operand, Name)
         if inside.order != 1:
             raise ProblemError(
-                f'{condition.origin}: "{condition.text}" holds a derivative of order {inside.order}.\nExpected: u and u\' in the conditions of a second-order equation.'
+                f'{condition.origin}: "{condition.text}" holds a derivative of order {inside.order}.\n'
+                "Expected: u and u' in the conditions of a second-order equation."
             )
         return scheme.end_derivative(inside.operand.name, problem.equations[0], shape)
 
@@ -168,7 +172,8 @@ def placement(problem: Problem, scheme: Scheme, uniform: bool) -> Callable[[Node
         if isinstance(node, Indexed) and node.name in scheme.weight_powers:
             if left != Number(0.0) and problem.exponent:
                 raise SchemeError(
-                    f'the scheme "{scheme.name}" has no weights for a shell whose ends are formulas of parameters.\nUse central or shell-balance there.'
+                    f'the scheme "{scheme.name}" has no weights for a shell whose ends are formulas of parameters.\n'
+                    "Use central or shell-balance there."
                 )
             return multiply(node, Binary("^", length, Number(float(scheme.weight_powers[node.name]))))
         if node in (up(x), down(x)):

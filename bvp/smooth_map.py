@@ -103,7 +103,7 @@ class SmoothMap:
         risen = np.polynomial.chebyshev.chebint(series, lbnd=-1.0, axis=1) / (2.0 * PANELS)
         # The rise over each panel is known from the old map itself: what was where stays there.
         risen *= (self.rise(old_edges[:-1], old_edges[1:]) / risen.sum(axis=1))[:, None]
-        return SmoothMap(risen.T.copy())
+        return SmoothMap(np.array(risen.T, dtype=np.float64))
 
     def _local(self, s: Array) -> tuple[npt.NDArray[np.int64], Array]:
         """The panel of each place in [0, 1], and the rise of X over the panel up to it."""

@@ -19,7 +19,10 @@ Array = npt.NDArray[np.float64]
 
 
 def grid_for(grid: str | Grid, intervals: int, problem: Problem) -> Grid:
-    """The grid to begin with: one given as such, a uniform one (which an adaptive grid is at first too), or a formula of s that maps [0, 1] on itself, such as s^2."""
+    """The grid to begin with: one given as such, a uniform one, or the formula of a map of [0, 1] on itself, such as s^2.
+
+    An adaptive grid begins as a uniform one.
+    """
     if isinstance(grid, Grid):
         return grid
     if grid in ("uniform", ADAPTIVE):

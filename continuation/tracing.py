@@ -129,7 +129,7 @@ def traced(asked_for: Asked, extra: tuple[Detector, ...] = (), name: str = "main
             "Start where a state is known (for example with the source switched off), or give an initial_guess."
         )
     steps, sweeps = found.steps, found.sweeps
-    sides: list[tuple[Followed, Recorder]] = []
+    sides: list[tuple[Followed[Kept], Recorder]] = []
     for sign in asked_for.signs:
         path, point = first_point(system, found, sign)
         path.steps = path.sweeps = 0
@@ -213,7 +213,7 @@ def _mirrored(point: Kept) -> Kept:
     return Kept(point.parameter, -point.arclength, point.measures, point.unstable)
 
 
-def _notes(followed: Followed, recorder: Recorder, asked_for: Asked) -> list[str]:
+def _notes(followed: Followed[Kept], recorder: Recorder, asked_for: Asked) -> list[str]:
     notes = []
     where = f"{asked_for.along} = {followed.points[-1].parameter:.6g}"
     if followed.ended == COARSE:

@@ -21,6 +21,8 @@ from continuation.path import Path, Point, border_through, norm_of
 Array = npt.NDArray[np.float64]
 
 MOST_SECANTS = 40
+SMOOTH_TRIALS = 12  # more than secants take where the equation is smooth
+MOST_HALVINGS, NARROW = 50, 1e-13
 POLISHED = 1e-12  # of the state: the last correction of the states on the way
 LEVEL = 1e-11  # what is left of the derivative, as a share of the curvature times the state
 
@@ -91,8 +93,9 @@ def near(system: DiscreteSystem, u: Array, parameter: float, null: Array, curvat
     guess = (u, parameter)
     distance, slope = 0.0, curvature
     last: tuple[float, float] | None = None
+    sides: dict[bool, tuple[float, Corrected]] = {}
     smallest = np.inf
-    for _ in range(MOST_SECANTS):
+    for trial in range(MOST_SECANTS + MOST_HALVINGS):
         found = path.counted(correct(system, guess[0], guess[1], border_through(base, distance), scales, tolerance=POLISHED, most_steps=20))
         if not found.ok:
             return found.reason
@@ -104,6 +107,17 @@ def near(system: DiscreteSystem, u: Array, parameter: float, null: Array, curvat
             return _turning(found, scales, slope, distance)
         smallest = min(smallest, abs(move))
         last = (distance, found.pace)
+        sides[found.pace > 0.0] = (distance, found)
+        if trial >= SMOOTH_TRIALS and len(sides) == 2:
+            # Where a node passes a kink of the equation the derivative jumps: there its sign is closed in on by halving.
+            (rising, left), (falling, right) = sides[True], sides[False]
+            if abs(falling - rising) <= NARROW:
+                return _turning(found, scales, math.copysign(curvature, rising - falling), distance)
+            distance = 0.5 * (rising + falling)
+            guess = (0.5 * (left.u + right.u), 0.5 * (left.parameter + right.parameter))
+            continue
+        if trial >= MOST_SECANTS:
+            break
         move = max(-0.3, min(move, 0.3))
         distance += move
         if abs(distance) > 2.0:

@@ -49,9 +49,9 @@ def numpy_functions() -> dict[str, Callable[..., Any]]:
 
             if np.ndim(p) == 0 and np.ndim(z) == 0:
                 return weight(float(p), float(z), part)
-            pairs = [np.ascontiguousarray(side, dtype=float) for side in np.broadcast_arrays(p, z)]
-            out = np.empty(pairs[0].shape)
-            weights(*pairs, part, out)
+            drifts, slopes = (np.ascontiguousarray(side, dtype=float) for side in np.broadcast_arrays(p, z))
+            out = np.empty(drifts.shape)
+            weights(drifts, slopes, part, out)
             return out
 
         return of_pairs

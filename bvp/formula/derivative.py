@@ -1,4 +1,7 @@
-"""Exact derivatives of trees. Literals are folded where that is exact, nothing is rearranged: the order of operations decides the rounding."""
+"""Exact derivatives of trees.
+
+Literals are folded where that is exact, nothing is rearranged: the order of operations decides the rounding.
+"""
 
 from __future__ import annotations
 

@@ -265,6 +265,11 @@ def number_of(tree: Node) -> float | None:
     return None
 
 
+def substituted(tree: Node, old: Node, new: Node) -> Node:
+    """The tree with one subtree in place of another."""
+    return transform(tree, lambda node: new if node == old else None)
+
+
 def names_in(tree: Node) -> set[str]:
     """The plain names in a tree (indexed ones and functions not among them)."""
     return {node.name for node in walk(tree) if isinstance(node, Name)}

@@ -11,7 +11,12 @@ from __future__ import annotations
 
 import math
 
+import numpy as np
+import numpy.typing as npt
+
 from bvp.kernels.jit import kernel
+
+Floats = npt.NDArray[np.float64]
 
 
 @kernel
@@ -170,7 +175,7 @@ def step_le(a: float, b: float) -> float:
 
 
 @kernel
-def weights(p: np.ndarray, z: np.ndarray, part: int, out: np.ndarray) -> None:
+def weights(p: Floats, z: Floats, part: int, out: Floats) -> None:
     """`weight` at every pair of two arrays of one shape (n,), into out."""
     for i in range(out.shape[0]):
         out[i] = weight(p[i], z[i], part)

@@ -6,8 +6,8 @@ so that the middle node and the parameter are left in a two by two system, solve
 where the matrix without its border is singular, at a turning point. The tangent (border right-hand side 1, the
 others 0) comes out of the same elimination.
 
-`row` and, for the two rows at each end, `end_row(i, u, rows, numbers) -> (r, a, b, c, q)` give row i; here it reads stored rows, in a generated module it is the
-typed formula. Indices: 0 and n - 1 are the conditions, 1 … n - 2 the nodes.
+`row` and, for the two rows at each end, `end_row(i, u, rows, numbers) -> (r, a, b, c, q)` give row i;
+here it reads stored rows, in a generated module it is the typed formula. Indices: 0 and n - 1 are the conditions, 1 … n - 2 the nodes.
 """
 
 from __future__ import annotations
@@ -86,7 +86,8 @@ def sweep(u, rows, numbers, left_kind, right_kind, direction, factor, corner, bo
 
     u, step, tangent : (n,); direction : (n,); work : (3, n). info receives: 0 the parameter's correction, 1 the
     tangent's parameter, 2 and 3 the sums of squares of both over the nodes, 4 the count of weak pivots, 5 and 6 those of
-    positive and negative pivots at nodes with an equation, 7 the count of neighbours whose couplings differ in sign, 8 the coupling of the middle node.
+    positive and negative pivots at nodes with an equation, 7 the count of neighbours whose couplings differ in sign, 8 the
+    coupling of the middle node.
     """
     first, last = 1, u.shape[0] - 2
     middle = (first + last) // 2

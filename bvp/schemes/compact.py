@@ -94,7 +94,7 @@ def source_form(equation: Equation, unknown: str, problem: Problem) -> tuple[Nod
         shown = write(held[0]) if held else write(leading) if strangers else equation.text
         raise SchemeError(
             f'the scheme "compact" has no fourth-order form on three nodes for "{shown}".\n'
-            f"Expected: c*laplacian({unknown}) + f = 0 with f a formula of {problem.coordinate} and {unknown} alone, and c of parameters alone.\n"
+            f"Expected: c*laplacian({unknown}) + f = 0, f a formula of {problem.coordinate} and {unknown} alone, c of parameters alone.\n"
             "Use central with extrapolation, or fitted where there is a first derivative."
         )
     return leading, source

@@ -54,13 +54,11 @@ def difference_row(scheme: Scheme, equation: Equation, unknown: str, shape: Shap
         moved, rest = split_by_derivatives(equation.tree)
         rule = scheme.formula("right_hand_side", problem, unknown)
         assert rule is not None
-        averaged = transform(rule, lambda node: at_node(rest, int(node.offset), problem) if _is_f(node) else None)
+        averaged = transform(
+            rule, lambda node: at_node(rest, int(node.offset), problem) if isinstance(node, Indexed) and node.name == "f" else None
+        )
         return _folded(Binary("+", _differenced(scheme, moved, unknown, shape), averaged), shape)
     return _folded(_differenced(scheme, equation.tree, unknown, shape), shape)
-
-
-def _is_f(node: Node) -> bool:
-    return isinstance(node, Indexed) and node.name == "f"
 
 
 def split_by_derivatives(tree: Node) -> tuple[Node, Node]:
@@ -233,7 +231,8 @@ def _flux_laplacian(scheme: Scheme, inside: Node, shape: Shape) -> Node:
     problem = shape.problem
     if not isinstance(inside, Name):
         raise SchemeError(
-            f'the flux of the scheme "{scheme.name}" is one of {problem.unknowns[0]}, not of "{write(inside)}".\nExpected: laplacian of an unknown.'
+            f'the flux of the scheme "{scheme.name}" is one of {problem.unknowns[0]}, not of "{write(inside)}".\n'
+            "Expected: laplacian of an unknown."
         )
     if shape.axis:
         axis = scheme.formula("axis", problem, inside.name)

@@ -50,7 +50,7 @@ def standard_form(equation: Equation, unknown: str, shape: Shape, scheme: str) -
         raise SchemeError(
             f"the scheme \"{scheme}\" has no form for an equation that is not linear in {unknown}'' and {unknown}'.\nUse central."
         )
-    zero = {curve: Number(0.0), slope: Number(0.0)}
+    zero: dict[Node, Node] = {curve: Number(0.0), slope: Number(0.0)}
     rest = transform(tree, zero.get)
     return StandardForm(Number(0.0) if shape.axis else _over(drift, leading), _over(rest, leading))
 

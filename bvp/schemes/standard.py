@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from bvp.formula import derivative
-from bvp.formula.tree import Binary, Call, Name, Node, Number, Prime, transform
+from bvp.formula.tree import Binary, Call, Name, Node, Number, Prime, substituted, transform
 from bvp.problem import Equation
 from bvp.schemes.difference import difference_row, minus, node_value, over, width
 from bvp.schemes.scheme import Scheme, Shape, at_node
@@ -35,17 +35,16 @@ class Upwind(Scheme):
         backward = over(minus(node_value(unknown, 0), node_value(unknown, -1)), width(x, -1, 0, shape))
         against = Binary("+", backward, Binary("*", Call("step_le", (Number(0.0), flow)), minus(forward, backward)))
         stand_in = Name("#against")
-        placed = transform(equation.tree, lambda node: stand_in if node == slope else None)
+        placed = substituted(equation.tree, slope, stand_in)
         row = difference_row(self, Equation(placed, equation.text, equation.order), unknown, shape)
-        return transform(row, lambda node: against if node == stand_in else None)
+        return substituted(row, stand_in, against)
 
 
 def leading_coefficient(tree: Node, unknown: str) -> Node:
     """What multiplies u'' or laplacian(u) in an equation, by differentiating; Number(1) for a flux, whose sign is that of k."""
+    stand_in = Name("#leading")
     for operator in (Prime(Name(unknown), 2), Call("laplacian", (Name(unknown),))):
-        stand_in = Name("#leading")
-        marked = transform(tree, lambda node, operator=operator: stand_in if node == operator else None)  # type: ignore[misc]
-        coefficient = derivative(marked, stand_in)
+        coefficient = derivative(substituted(tree, operator, stand_in), stand_in)
         if coefficient != Number(0.0):
             return coefficient
     return Number(1.0)

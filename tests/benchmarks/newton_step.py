@@ -58,14 +58,15 @@ def main() -> None:
         theirs = lapack_seconds(intervals) / intervals
         turned = branch.turning_points[0].value
         print(
-            f"{intervals:9d} {branch.newton_steps:13d} {1e9 * ours:23.1f} {1e9 * theirs:21.1f} {ours / theirs:6.2f} {branch.seconds:8.2f} {grown:18.0f}"
-            f"   turning point {turned:.10f}",
+            f"{intervals:9d} {branch.newton_steps:13d} {1e9 * ours:23.1f} {1e9 * theirs:21.1f} {ours / theirs:6.2f}"
+            f" {branch.seconds:8.2f} {grown:18.0f}   turning point {turned:.10f}",
             flush=True,
         )
     if asked.solve:
         began = time.perf_counter()
         state = bvp.solve(problem, {"lam": 2.0}, intervals=10**asked.solve)
-        print(f"{10**asked.solve} intervals solved in {time.perf_counter() - began:.1f} s: ok {state.ok}, max(u) {state.measure('max(u)'):.12f}")
+        spent = time.perf_counter() - began
+        print(f"{10**asked.solve} intervals solved in {spent:.1f} s: ok {state.ok}, max(u) {state.measure('max(u)'):.12f}")
 
 
 if __name__ == "__main__":

@@ -1,4 +1,7 @@
-"""The slab's turning point to ten digits, against a loop of a general solver over the same branch: `python -m tests.benchmarks.turning_point`."""
+"""The slab's turning point to ten digits, against a loop of a general solver over the same branch.
+
+`python -m tests.benchmarks.turning_point`
+"""
 
 from __future__ import annotations
 

@@ -131,7 +131,8 @@ def test_compiled_and_interpreted_agree() -> None:
             assert KERNELS[part](p, z) == pytest.approx(plain, rel=1e-15)
         for kernel in (special.cardinal, special.cardinal_slope):
             assert kernel(z) == pytest.approx(interpreted(kernel)(z), rel=1e-15, abs=1e-17, nan_ok=True)
-            assert interpreted(kernel)(z) == float_functions()[interpreted(kernel).__name__](z)
+            plain = float_functions()[interpreted(kernel).__name__](z)
+            assert interpreted(kernel)(z) == plain or (math.isnan(plain) and math.isnan(interpreted(kernel)(z)))
         assert special.step_le(p, z) == (1.0 if p <= z else 0.0)
     for z in (-1e7, -2e6, math.nan):
         for kernel in (special.cardinal, special.cardinal_slope):

@@ -53,7 +53,10 @@ def source_of(form: str, f: Any, k: Any = sympy.Integer(1)) -> Any:
 
 
 def equation(form: str, f: Any, k: Any = sympy.Integer(1), geometry: str = "slab") -> str:
-    """The typed equation: "plain" u'' + f, "laplacian", "flux" (k u')' + f, "divergence" div(k grad u) + f, "text-book" u'' + (s/x) u' + f."""
+    """The typed equation: "plain" u'' + f, "laplacian", "flux" (k u')' + f, "divergence" div(k grad u) + f, or "text-book".
+
+    The last is u'' + (s/x) u' + f.
+    """
     s = EXPONENTS[geometry]
     leading = {
         "plain": "u''",

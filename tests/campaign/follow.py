@@ -30,7 +30,7 @@ def first_state(system: Collocated, lam: float) -> tuple[Array, float]:
     """The state at the start, by Newton from the model's guess."""
     model = system.model
     length = model.right - model.left
-    values = {symbol: number for symbol, number in zip(model.symbols, model.numbers(lam * model.along_unit), strict=True)}
+    values = dict(zip(model.symbols, model.numbers(lam * model.along_unit), strict=True))
     guess = ((model.guess - model.base) / model.unit).subs(X, model.left + length * XI).subs(values)
     forms = [sympy.lambdify(XI, sympy.diff(guess, XI, order), "numpy") for order in (2, 0, 1)]
     y = np.array([*np.broadcast_to(forms[0](system.xi), system.xi.shape), forms[1](0.0), forms[2](0.0)], dtype=float)

@@ -133,7 +133,10 @@ def pellet(rng: Generator, turn: int) -> Draft:
 
 
 def store(rng: Generator, turn: int) -> Draft:
-    """Self-heating in physical units: k T'' + heat exp(-E/(R T)) = 0 in kelvin and metres, traced along the half depth or the ambient temperature."""
+    """Self-heating in physical units: k T'' + heat exp(-E/(R T)) = 0 in kelvin and metres.
+
+    Traced along the half depth or the ambient temperature.
+    """
     k, heat, energy, gas, ambient, film = (symbol(name) for name in ("k", "heat", "E", "R", "Ta", "film"))
     geometry = GEOMETRIES[turn % 3]
     parameters = {

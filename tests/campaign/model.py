@@ -43,8 +43,9 @@ def typed(expression: Any) -> str:
 class Model:
     """The symbols of one problem; `left` and `right` are the ends, a condition is an expression in U and V that has to vanish.
 
-    At an axis (geometry not a slab, left end 0) the left condition is V. `breaks` are the places, as shares of the length, where a coefficient
-    has a kink. `unit` and `along_unit` are the sizes of u - `base` and of the traced parameter, for problems in physical units.
+    At an axis (geometry not a slab, left end 0) the left condition is V. `breaks` are the places, as shares of the length,
+    where a coefficient has a kink. `unit` and `along_unit` are the sizes of u - `base` and of the traced parameter, in physical
+    units.
     """
 
     source: Any

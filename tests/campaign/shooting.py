@@ -6,6 +6,7 @@ turning point is where the right condition B and dB/dq vanish together. Nothing 
 
 from __future__ import annotations
 
+import itertools
 from typing import Any
 
 import numpy as np
@@ -79,7 +80,7 @@ class Shooting:
         y, kink = np.array(self.start(q, *numbers), dtype=float), self.kink
         side = 1.0 if kink is None or y[0] > kink else -1.0
         places = [self.first_place, *self.model.breaks, 1.0]
-        for begin, end in zip(places, places[1:], strict=False):
+        for begin, end in itertools.pairwise(places):
             # One float inside each piece: no stage may stand on a kink, where sign() is 0.
             begin, end = (np.nextafter(begin, 1.0) if begin else begin), np.nextafter(end, 0.0)
             while begin < end:

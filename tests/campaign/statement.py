@@ -1,4 +1,7 @@
-"""A campaign problem as data: what is typed, how it is traced, and what is known about its turning points. Needs nothing but the standard library."""
+"""A campaign problem as data: what is typed, how it is traced, and what is known about its turning points.
+
+Needs nothing but the standard library.
+"""
 
 from __future__ import annotations
 
@@ -13,7 +16,7 @@ FILE = Path(__file__).with_name("problems.json")
 
 @dataclass(frozen=True)
 class TrueTurningPoint:
-    """The traced parameter at a turning point, as decimal text, with its own uncertainty, and the problem's measure there ("" if not known)."""
+    """The traced parameter at a turning point, as decimal text, with its own uncertainty, and the measure there ("" if not known)."""
 
     value: str
     uncertainty: float

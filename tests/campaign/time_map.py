@@ -7,6 +7,7 @@ g = (G(m) - G(u))/(m - u) = mean of f k between u and m, itself a Gauss-Legendre
 
 from __future__ import annotations
 
+import itertools
 from collections.abc import Callable
 from fractions import Fraction
 from functools import lru_cache
@@ -51,7 +52,7 @@ class TimeMap:
 
     def _pieces(self, cuts: list[Any]) -> list[tuple[Any, Any]]:
         places = sorted({0, 1, *(cut for cut in cuts if 0 < cut < 1)})
-        return list(zip(places, places[1:], strict=False))
+        return list(itertools.pairwise(places))
 
     def mean(self, u: Any, m: Any) -> Any:
         """The mean of f k between u and m."""

@@ -7,9 +7,8 @@ from dataclasses import replace
 from cases.describe import described
 from cases.load import load
 from cases.report import text_of
-from cases.words import NUMERICAL_ONLY
 from cases.tables import WIDTH, table
-from cases.words import unit_of_measure
+from cases.words import NUMERICAL_ONLY, unit_of_measure
 from tests.cases.made_results import branch, cylinder, found_states, solved, traced
 
 
