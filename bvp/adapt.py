@@ -12,7 +12,8 @@ from functools import cached_property
 import numpy as np
 import numpy.typing as npt
 
-from bvp.discretize import DiscreteSystem, Discretization, discretization
+from bvp.discrete_system import DiscreteSystem
+from bvp.discretize import Discretization, discretization
 from bvp.errors import InputError
 from bvp.grid import Grid
 from bvp.monitor import density, is_symmetric, roughness

@@ -9,12 +9,13 @@ that hides within one shows between the two.
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from itertools import pairwise
 
 SAFETY = 4.0  # what an estimated truncation error is multiplied by; the campaign of tests found no miss at 2
 FAMILIES_SAFETY = 2.0
+ROUGH_SAFETY = 1.5
 SETTLED = 0.15  # how near to a whole number a measured exponent has to be: the next power contributes less than that
 STEADY = 0.75  # how much an exponent may change from grid to grid to be used at all
 HIGHEST = 14
@@ -116,3 +117,25 @@ def combined(first: Sequence[float], second: Sequence[float], floor: float) -> t
     apart = abs(one.value - other.value)
     uncertainty = max(SAFETY * better.error, FAMILIES_SAFETY * apart, ROUNDING * abs(better.value), 2.0 * floor)
     return better, uncertainty
+
+
+def combined_rough(entries: Mapping[int, float], floor: float) -> tuple[Limit, float]:
+    """The limit where the equation has a kink: C h^2 with a C that changes from grid to grid, as nodes meet the kink or not.
+
+    entries : the value by the number of intervals. No exponent settles, and where one seems to, it is because the kink
+    sits on the same node of every grid. The limit is that of the line in h^2 through the finest six, its uncertainty
+    the whole of the term in h^2 that is left on the finest grid, by the largest C seen.
+    """
+    counts = sorted(entries)[-6:]
+    squares = [1.0 / (count * count) for count in counts]
+    values = [entries[count] for count in counts]
+    weights = [float(count) ** 4 for count in counts]  # an error C h^2 weighs alike on every grid
+    total = sum(weights)
+    mean, middle = (sum(w * v for w, v in zip(weights, column, strict=True)) / total for column in (squares, values))
+    spread = sum(w * (square - mean) ** 2 for w, square in zip(weights, squares, strict=True))
+    slope = sum(w * (square - mean) * (v - middle) for w, square, v in zip(weights, squares, values, strict=True)) / spread
+    limit = middle - slope * mean
+    largest = max(abs(value - limit) / square for value, square in zip(values, squares, strict=True))
+    error = largest * squares[-1]
+    order = measured_exponent(values[1::2], floor)
+    return Limit(limit, error, order, 1), max(ROUGH_SAFETY * error, ROUNDING * abs(limit), 2.0 * floor)

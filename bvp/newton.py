@@ -13,7 +13,7 @@ from typing import NamedTuple
 import numpy as np
 import numpy.typing as npt
 
-from bvp.discretize import DiscreteSystem
+from bvp.discrete_system import DiscreteSystem
 
 Array = npt.NDArray[np.float64]
 

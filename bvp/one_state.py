@@ -7,7 +7,8 @@ from collections.abc import Mapping
 import numpy as np
 import numpy.typing as npt
 
-from bvp.discretize import DiscreteSystem, Discretization
+from bvp.discrete_system import DiscreteSystem
+from bvp.discretize import Discretization
 from bvp.grid import Grid
 from bvp.newton import Corrected, Scales, correct, held_parameter
 from bvp.problem import Problem

@@ -14,6 +14,7 @@ from bvp.formula import Vocabulary, evaluate, float_functions, parse, write
 from bvp.formula.tree import Call, Name, Node, Number, Prime, difference_of_sides, names_in, transform, walk
 from bvp.geometry import EXPONENTS, NAMES
 from bvp.given import GivenFunction
+from bvp.named_formulas import bounded, named_formulas
 from bvp.recognise import recognised
 
 Texts = str | Sequence[str]
@@ -99,7 +100,7 @@ class Problem:
         put("vocabulary", vocabulary)
         put("origin", origin)
         put("ends", tuple(self._of_parameters(end, f"{origin}, domain") for end in (left, right)))
-        put("where", _where(where or {}, vocabulary, origin))
+        put("where", named_formulas(where or {}, vocabulary, origin))
         put("initial_guess", self._guesses(initial_guess or {}))
         self._state_equations(_listed(equations), geometry)
         self._state_conditions(_listed(conditions))
@@ -132,7 +133,7 @@ class Problem:
         return trees
 
     def _with_where(self, tree: Node) -> Node:
-        return _bounded(transform(tree, lambda node: self.where.get(node.name) if isinstance(node, Name) else None), self.origin)
+        return bounded(transform(tree, lambda node: self.where.get(node.name) if isinstance(node, Name) else None), self.origin)
 
     def _state_equations(self, texts: Sequence[str], geometry: str) -> None:
         origin = self.origin
@@ -209,6 +210,15 @@ class Problem:
         """Whether the domain starts at the axis of a cylinder or the centre of a sphere."""
         return self.exponent > 0 and isinstance(self.ends[0], Number) and self.ends[0].value == 0.0
 
+    @property
+    def kinked(self) -> bool:
+        """Whether an equation has corners in its unknown: abs, min or max of something that holds it."""
+        return any(
+            isinstance(node, Call) and node.function in ("abs", "min", "max") and bool(names_in(node) & set(self.unknowns))
+            for equation in self.equations
+            for node in walk(equation.tree)
+        )
+
     def with_parameters(self, changes: Mapping[str, float]) -> Problem:
         """The same problem with other values of its parameters."""
         numbers = dict(self.parameters)
@@ -280,19 +290,6 @@ def order_of(tree: Node, unknown: str, origin: str) -> int:
     return highest
 
 
-LARGEST_TREE, HIGHEST_TREE = 20_000, 300  # nodes, and levels: what formulas put into formulas may grow to
-
-
-def _bounded(tree: Node, origin: str) -> Node:
-    """The tree; ProblemError where [where] formulas put into each other have made it too large."""
-    if tree.size > LARGEST_TREE or tree.height > HIGHEST_TREE:
-        raise ProblemError(
-            f"{origin}, where: the formulas put into each other make one of {tree.size} parts on {tree.height} levels.\n"
-            f"The bounds are {LARGEST_TREE} and {HIGHEST_TREE}.\nShorten them, or name less by way of each other."
-        )
-    return tree
-
-
 def _copied(problem: Problem, **changes: Any) -> Problem:
     copy = object.__new__(Problem)
     for name, value in {**problem.__dict__, **changes}.items():
@@ -311,27 +308,6 @@ def _number(value: object, origin: str) -> float:
     if not math.isfinite(number):
         raise ProblemError(f"{origin} is {number}.\nExpected: a finite number.")
     return number
-
-
-def _where(texts: Mapping[str, str], vocabulary: Vocabulary, origin: str) -> dict[str, Node]:
-    """The named formulas, each with those before it put in; a circle among them is an error."""
-    raw = {name: parse(str(text), "plain", vocabulary, f"{origin}, where, {name}") for name, text in texts.items()}
-    done: dict[str, Node] = {}
-
-    def resolve(name: str, above: tuple[str, ...]) -> Node:
-        if name in above:
-            raise ProblemError(
-                f"{origin}, where: {' needs '.join([*above, name])}, a circle.\n"
-                "Expected: formulas that can be worked out one after the other."
-            )
-        if name not in done:
-            put_in = transform(
-                raw[name], lambda node: resolve(node.name, (*above, name)) if isinstance(node, Name) and node.name in raw else None
-            )
-            done[name] = _bounded(put_in, origin)
-        return done[name]
-
-    return {name: resolve(name, ()) for name in raw}
 
 
 def _tables(measured: Mapping[str, Any], functions: Mapping[str, GivenFunction]) -> dict[str, Any]:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from bvp.adapt import MOST_MOVES, Adaptation, moved_over
-from bvp.discretize import DiscreteSystem
+from bvp.discrete_system import DiscreteSystem
 from bvp.newton import Scales
 from continuation.path import Path, Point
 

@@ -12,7 +12,7 @@ from typing import NamedTuple
 import numpy as np
 import numpy.typing as npt
 
-from bvp.discretize import DiscreteSystem
+from bvp.discrete_system import DiscreteSystem
 from bvp.newton import Border, Corrected, Scales, correct
 
 Array = npt.NDArray[np.float64]

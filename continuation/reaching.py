@@ -8,7 +8,7 @@ from typing import Any
 
 import numpy as np
 
-from bvp.discretize import DiscreteSystem
+from bvp.discrete_system import DiscreteSystem
 from bvp.errors import InputError
 from bvp.measures import Measure
 from bvp.newton import Corrected
@@ -145,7 +145,7 @@ def _refined_place(setting: Setting, place: Place, detector: ValueDetector) -> R
         again = _found_again(on(intervals), Place(one.found, one.point._replace(u=disturbed), on(intervals)), intervals, even, detector)
         return again if isinstance(again, Place) else one
 
-    result = refined(place, system.grid.intervals, find, values, setting.digits or 8, repeat)
+    result = refined(place, system.grid.intervals, find, values, setting.digits or 8, repeat, kinked=system.of.problem.kinked)
     names = [measure.text for measure in setting.measures]
     uncertainty = result.uncertainties[""] if setting.consistency.ok is True else None
     notes = list(result.notes) + (

@@ -12,7 +12,7 @@ from typing import Generic, TypeVar
 
 import numpy as np
 
-from bvp.extrapolate import combined
+from bvp.extrapolate import combined, combined_rough
 from bvp.grid import MOST_INTERVALS
 from continuation.records import Refined
 
@@ -22,6 +22,7 @@ COARSEST, FIRST_COARSE = 8, 48  # intervals of the coarsest grid: never fewer, a
 LEVELS = 4  # grids of each family before a first estimate
 FINEST = 1 << 14  # intervals beyond which a value is left with the uncertainty it has
 MOST_LEVELS = 12
+ROUGH_SETTLED = 1e-2  # relative uncertainty at which a value of an equation with a kink, whose changes are erratic, counts as settled
 
 
 @dataclass(frozen=True)
@@ -66,13 +67,14 @@ def refined(
     *,
     most: int = FINEST,
     coarsest: int | None = None,
+    kinked: bool = False,
 ) -> Refinement[Feature]:
     """Refine what was found on a grid of `intervals`.
 
     find(N, feature, M) looks on N intervals for the feature known on M, and returns it or a sentence why not. measure
     gives the numbers to extrapolate, the main one under "". repeat solves the finest again from disturbed data: what its
-    numbers differ by is the rounding of the solves. coarsest : an even number of intervals to begin with. Ends once the main
-    value has its digits, or at `most` intervals.
+    numbers differ by is the rounding of the solves. coarsest : an even number of intervals to begin with. kinked : the
+    equation is not smooth in its unknown. Ends once the main value has its digits, or at `most` intervals.
     """
     base = coarsest or int(np.clip(2 * (intervals // 16), COARSEST, FIRST_COARSE))
     families = (Family[Feature](base), Family[Feature](base * 3 // 2))
@@ -102,7 +104,7 @@ def refined(
     )
     failures = {count: reason for count in grids if (reason := visit(count)) is not None}
     level = LEVELS
-    outcome = _extrapolated(families, values, {})
+    outcome = _extrapolated(families, values, {}, kinked)
     while level < MOST_LEVELS and (outcome is None or not _enough(outcome, digits)):
         finer = [family.coarsest << level for family in families]
         if finer[0] > min(most, MOST_INTERVALS):
@@ -111,7 +113,7 @@ def refined(
         if len([count for count in finer if count in failures]) == 2 and level >= LEVELS + 2:
             break
         level += 1
-        outcome = _extrapolated(families, values, {})
+        outcome = _extrapolated(families, values, {}, kinked) or (outcome if kinked else None)  # erratic: one grid may have none
     finest = max(known)
     if outcome is None:
         reason = failures.get(max(failures)) if failures else "too few grids"
@@ -119,9 +121,10 @@ def refined(
         return Refinement(main, dict.fromkeys(main), None, (), False, start, intervals, (f"does not survive refinement: {reason}",))
     once, again = values(known[finest], finest), measure(repeat(known[finest], finest), finest)
     floors = {name: abs(again[name] - number) for name, number in once.items()}
-    outcome = _extrapolated(families, values, floors) or outcome
+    outcome = _extrapolated(families, values, floors, kinked) or outcome
     limits, uncertainties, order, entries = outcome
-    survives = _settles(families, values)
+    rough = uncertainties[""] if kinked else None
+    survives = _settles(families, values) if rough is None else rough <= ROUGH_SETTLED * abs(limits[""])
     if not survives:
         uncertainties = dict.fromkeys(uncertainties)
         notes.append("does not survive refinement: its value does not settle on finer grids")
@@ -136,7 +139,10 @@ Outcome = tuple[dict[str, float], dict[str, float | None], float | None, tuple[R
 
 
 def _extrapolated(
-    families: Sequence[Family[Feature]], values: Callable[[Feature, int], Mapping[str, float]], floors: Mapping[str, float]
+    families: Sequence[Family[Feature]],
+    values: Callable[[Feature, int], Mapping[str, float]],
+    floors: Mapping[str, float],
+    kinked: bool,
 ) -> Outcome | None:
     runs = [family.run() for family in families]
     if any(len(run) < 3 for run in runs):
@@ -150,7 +156,12 @@ def _extrapolated(
         if not all(np.all(np.isfinite(column)) for column in columns):
             limits[name], uncertainties[name] = float("nan"), None
             continue
-        limit, uncertainty = combined(columns[0], columns[1], floors.get(name, 0.0))
+        if kinked:
+            limit, uncertainty = combined_rough(
+                {count: float(numbers[name]) for one in taken for count, numbers in one.items()}, floors.get(name, 0.0)
+            )
+        else:
+            limit, uncertainty = combined(columns[0], columns[1], floors.get(name, 0.0))
         limits[name], uncertainties[name] = limit.value, uncertainty
         if not name:
             order = limit.order

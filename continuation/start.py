@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 import numpy.typing as npt
 
-from bvp.discretize import DiscreteSystem
+from bvp.discrete_system import DiscreteSystem
 from bvp.newton import Corrected, Scales
 from bvp.one_state import solved
 from continuation.path import Path, Point

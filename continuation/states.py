@@ -11,7 +11,7 @@ import numpy as np
 import numpy.typing as npt
 
 from bvp.adapt import moved_over
-from bvp.discretize import DiscreteSystem
+from bvp.discrete_system import DiscreteSystem
 from bvp.errors import InputError
 from bvp.newton import Corrected
 from bvp.one_state import solved, state_of
@@ -224,11 +224,21 @@ def _real_state(setting: Setting, system: DiscreteSystem, found: Corrected, note
         again = solved(on(intervals), one.u * (1.0 + 1e-9 * np.cos(np.arange(one.u.size))), value)
         return again if again.ok else one
 
-    result = refined(found, system.grid.intervals, find, values, setting.digits or 8, repeat)
+    result = refined(found, system.grid.intervals, find, values, setting.digits or 8, repeat, kinked=system.of.problem.kinked)
     if not result.survives:
         # Next to a turning point the coarse grids have lost the state already: begin with grids like the one it was found on.
         near = 2 * (system.grid.intervals // 4)
-        result = refined(found, system.grid.intervals, find, values, setting.digits or 8, repeat, coarsest=near, most=8 * near)
+        result = refined(
+            found,
+            system.grid.intervals,
+            find,
+            values,
+            setting.digits or 8,
+            repeat,
+            coarsest=near,
+            most=8 * near,
+            kinked=system.of.problem.kinked,
+        )
     if not result.survives:
         taken = values(found, system.grid.intervals)[""]
         text = setting.measures[0].text

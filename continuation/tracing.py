@@ -11,7 +11,7 @@ import numpy as np
 import numpy.typing as npt
 
 from bvp.consistency import consistency
-from bvp.discretize import DiscreteSystem
+from bvp.discrete_system import DiscreteSystem
 from bvp.errors import ComputationError
 from bvp.kernels.jit import compile_seconds
 from bvp.newton import Corrected

@@ -13,7 +13,7 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
-from bvp.discretize import DiscreteSystem
+from bvp.discrete_system import DiscreteSystem
 from bvp.newton import Corrected, Scales, correct
 from continuation.bracket import Bracket
 from continuation.path import Path, Point, border_through, norm_of
@@ -118,6 +118,8 @@ def near(system: DiscreteSystem, u: Array, parameter: float, null: Array, curvat
             continue
         if trial >= MOST_SECANTS:
             break
+        if trial >= SMOOTH_TRIALS:
+            move *= 2.0 ** (trial - SMOOTH_TRIALS + 1)  # a slope taken over a corner is far too steep
         move = max(-0.3, min(move, 0.3))
         distance += move
         if abs(distance) > 2.0:

@@ -9,7 +9,7 @@ import numpy as np
 import numpy.typing as npt
 
 from bvp.consistency import Consistency
-from bvp.discretize import DiscreteSystem
+from bvp.discrete_system import DiscreteSystem
 from bvp.measures import Measure
 from bvp.one_state import state_of
 from bvp.resample import carried
@@ -107,7 +107,7 @@ def turning_point(setting: Setting, located: DiscreteTurning, position: float, b
         again = turning.near(on(intervals), disturbed, found.parameter * (1.0 + SINGULAR_SHIFT), found.null, found.curvature, found.scales)
         return again if isinstance(again, DiscreteTurning) else found
 
-    result = refined(located, system.grid.intervals, find, values, setting.digits, repeat)
+    result = refined(located, system.grid.intervals, find, values, setting.digits, repeat, kinked=system.of.problem.kinked)
     notes += result.notes
     uncertainties = dict(result.uncertainties)
     if setting.consistency.ok is not True and result.survives:

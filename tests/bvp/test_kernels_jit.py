@@ -81,9 +81,7 @@ def test_other_users_of_numba_keep_their_cache_folder() -> None:
 
 def test_every_kernel_has_the_flags_of_the_project() -> None:
     made = kernel(lambda a: a)
-    options = getattr(made, "targetoptions", None)
-    if options is None:
-        pytest.skip("compiling is switched off")
+    options = made.targetoptions
     assert options["error_model"] == "numpy"
     assert options["nogil"]
     assert not options.get("fastmath")
