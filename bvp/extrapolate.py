@@ -120,9 +120,9 @@ def combined(first: Sequence[float], second: Sequence[float], floor: float) -> t
 
 
 def combined_rough(entries: Mapping[int, float], floor: float) -> tuple[Limit, float]:
-    """The limit where the equation has a kink: C h^2 with a C that changes from grid to grid, as nodes meet the kink or not.
+    """The limit where the equation has a corner: C h^2 with a C that changes from grid to grid, as nodes meet the corner or not.
 
-    entries : the value by the number of intervals. No exponent settles, and where one seems to, it is because the kink
+    entries : the value by the number of intervals. No exponent settles, and where one seems to, it is because the corner
     sits on the same node of every grid. The limit is that of the line in h^2 through the finest six, its uncertainty
     the whole of the term in h^2 that is left on the finest grid, by the largest C seen.
     """

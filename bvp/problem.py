@@ -211,13 +211,17 @@ class Problem:
         return self.exponent > 0 and isinstance(self.ends[0], Number) and self.ends[0].value == 0.0
 
     @property
-    def kinked(self) -> bool:
-        """Whether an equation has corners in its unknown: abs, min or max of something that holds it."""
-        return any(
-            isinstance(node, Call) and node.function in ("abs", "min", "max") and bool(names_in(node) & set(self.unknowns))
+    def corners(self) -> str:
+        """Where an equation has corners, by abs, min or max: in the "unknown", in the "coordinate" alone, or "" nowhere."""
+        cornered = [
+            names_in(node)
             for equation in self.equations
             for node in walk(equation.tree)
-        )
+            if isinstance(node, Call) and node.function in ("abs", "min", "max")
+        ]
+        if any(names & set(self.unknowns) for names in cornered):
+            return "unknown"
+        return "coordinate" if any(self.coordinate in names for names in cornered) else ""
 
     def with_parameters(self, changes: Mapping[str, float]) -> Problem:
         """The same problem with other values of its parameters."""

@@ -145,8 +145,10 @@ class Series:
         return result
 
     def _real_power(self, exponent: Any) -> Series:
-        """(c s^v (1 + t))^p = c^p s^(v p) (1 + t)^p, by y' (1 + t) = p y t'."""
+        """(c s^v (1 + t))^p = c^p s^(v p) (1 + t)^p, by y' (1 + t) = p y t'; only where it vanishes is kept of a broken power."""
         shift = self.valuation * exponent
+        if exponent > 0 and self.valuation > 0 and (not self.coefficients or shift != int(shift)):
+            return Series((), math.floor(shift) if not self.coefficients else math.ceil(shift))
         if not self.coefficients:
             raise SeriesError(f"the power {exponent} of what vanishes below s^{self.end}")
         if shift != int(shift):

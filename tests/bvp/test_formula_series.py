@@ -131,14 +131,15 @@ def test_series_of_formulas(text: str, start: int, expected: list[float]) -> Non
         (lambda: F["log"](s), "log of what vanishes"),
         (lambda: F["log"](1 / s), "log of what grows"),
         (lambda: F["log"](s - 2), "log of what is negative"),
-        (lambda: F["sqrt"](s), r"the power 0.5 of what begins with s\^1"),
+        (lambda: F["sqrt"](1 / s), r"the power 0.5 of what begins with s\^-1"),
         (lambda: F["sqrt"](s - 1), "negative"),
-        (lambda: s**1.5, "no series in whole powers"),
+        (lambda: s**-1.5, "no series in whole powers"),
         (lambda: F["exp"](1 / s), r"exp of what grows like s\^-1"),
         (lambda: F["sin"](1 / s**2), r"sin of what grows like s\^-2"),
         (lambda: 1 / (s - s), "a division by what vanishes"),
         (lambda: s / 0.0, "a division by 0"),
-        (lambda: (s - s) ** 0.5, "the power 0.5 of what vanishes"),
+        (lambda: (s - s) ** -0.5, "the power -0.5 of what vanishes"),
+        (lambda: (s**1.5).coefficient(2), r"known below s\^2 only"),
         (lambda: F["asin"](s + 2), "asin at 2.0 is nan"),
         (lambda: F["exp"](s + 1000), "exp at 1000.0 is inf"),
         (lambda: F["exp"](1000.0), "exp at 1000.0 is inf"),
@@ -152,6 +153,12 @@ def test_series_of_formulas(text: str, start: int, expected: list[float]) -> Non
 def test_what_has_no_series_says_why(expand: Callable[[], Any], reason: str) -> None:
     with pytest.raises(SeriesError, match=reason):
         expand()
+
+
+def test_of_a_broken_power_it_is_known_where_it_vanishes() -> None:
+    for series, end in ((s**1.5, 2), (F["sqrt"](s), 1), (F["sqrt"](s * s * s), 2)):
+        assert [series.coefficient(power) for power in range(end)] == [0.0] * end
+        assert series.end == end
 
 
 # -- arithmetic -------------------------------------------------------------------------------------------------------

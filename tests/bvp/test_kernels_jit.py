@@ -6,6 +6,7 @@ import os
 import subprocess
 import sys
 from pathlib import Path
+from typing import Any
 
 import pytest
 
@@ -80,7 +81,7 @@ def test_other_users_of_numba_keep_their_cache_folder() -> None:
 
 
 def test_every_kernel_has_the_flags_of_the_project() -> None:
-    made = kernel(lambda a: a)
+    made: Any = kernel(lambda a: a)
     options = made.targetoptions
     assert options["error_model"] == "numpy"
     assert options["nogil"]

@@ -40,7 +40,7 @@ class Collocated:
         numbers = self.model.numbers(lam)
         with np.errstate(all="ignore"):
             inner = self.functions[0](self.xi, self.u_at @ y, self.p_at @ y, y[:-2], *numbers)
-            found = [[np.broadcast_to(np.asarray(one, dtype=float), self.xi.shape) for one in inner]]
+            found: list[list[Any]] = [[np.broadcast_to(np.asarray(one, dtype=float), self.xi.shape) for one in inner]]
             for end in (0, 1):
                 values = self.functions[end + 1](float(end), float(self.u_ends[end] @ y), float(self.p_ends[end] @ y), 0.0, *numbers)
                 found.append([float(one) for one in values])

@@ -63,7 +63,8 @@ def follow(model: Model, start: float, direction: str, wanted: int = 1, beyond: 
     along = np.zeros(system.size + 1)
     along[-1] = 1.0 if direction == "up" else -1.0
     tangent = unit_tangent(system, y, lam, along)
-    points, turnings = [(y, lam)], []
+    points: list[tuple[Array, float]] = [(y, lam)]
+    turnings: list[tuple[int, Turning]] = []
     step, left = 0.01, beyond
     for _ in range(LONGEST):
         row = metric(system, tangent)

@@ -61,8 +61,8 @@ def main() -> int:
             for one in kept:
                 points = ", ".join(f"{point.value[:16]} ({point.uncertainty:.0e})" for point in one.turning_points)
                 print(f"   {one.name}: {one.problem['equations'][0]}; {points}; origins differ by {one.agreement:.0e}; {one.states}")
-    if not wanted:
-        write(with_sample(found), "Made by python -m tests.campaign.make; see tests/campaign/__init__.py.")
+        else:
+            write(with_sample(found), "Made by python -m tests.campaign.make; see tests/campaign/__init__.py.")
     print(f"{len(found)} problems")
     return 0
 

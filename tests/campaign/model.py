@@ -21,7 +21,7 @@ Q = sympy.Symbol("_free", real=True)  # what shooting varies
 EXPONENTS = {"slab": 0, "cylinder": 1, "sphere": 2}
 
 
-class Typed(StrPrinter):
+class Typed(StrPrinter):  # type: ignore[misc]  # sympy has no types
     """Formulas as they are typed: ^ for powers, abs, min and max in small letters."""
 
     def _print_Abs(self, expr: Any) -> str:

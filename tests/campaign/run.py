@@ -1,0 +1,160 @@
+"""Holds the tool against the campaign's truths: `python -m tests.campaign.run --schemes central,compact --workers 2 --out FILE`.
+
+Every problem is traced with every scheme that applies. A miss is a truth outside of value ± (uncertainty + the truth's own): there may be
+none. With --out each finished pair is a line of a file, and a second run goes on from there.
+"""
+
+from __future__ import annotations
+
+import argparse
+import json
+import os
+import sys
+import time
+from collections.abc import Iterable, Iterator
+from concurrent.futures import ProcessPoolExecutor
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+
+import bvp
+import continuation
+from bvp.errors import ComputationError, InputError
+from tests.campaign.statement import Statement, read
+
+Row = dict[str, Any]
+NEAR = 1e-2  # relative: a computed turning point farther from a truth than this is another one
+DIGITS = 8
+
+
+def held_against(statement: Statement, scheme: str, *, grid: str = "adaptive", states: bool = True) -> list[Row]:
+    """One row for each truth of a problem (turning points, their measures, states), or one that says why there is none."""
+    began = time.perf_counter()
+    about = {"name": statement.name, "kind": statement.kind, "scheme": scheme}
+    keywords = {**statement.trace, "measure": statement.measure, "scheme": scheme, "grid": grid, "digits": DIGITS, "compiled": False}
+    try:
+        problem = bvp.Problem(**{**statement.problem, "measured": _arrays(statement.problem.get("measured"))})
+        values = [statement.states.at] if states and statement.states is not None else []
+        branch, found = continuation.traced_with_states(problem, values, **keywords)
+    except InputError as refused:
+        return [{**about, "what": "refused", "why": str(refused).splitlines()[0]}]
+    except ComputationError as failed:
+        return [{**about, "what": "failed", "why": str(failed).splitlines()[0]}]
+    rows: list[Row] = []
+    real = [point for point in branch.turning_points if point.survives]
+    for number, truth in enumerate(statement.turning_points):
+        near = [point for point in real if abs(point.value - truth.number) <= NEAR * abs(truth.number)]
+        if not near:
+            rows.append(
+                {**about, "what": "not found", "number": number + 1, "truth": truth.number, "why": f"{branch.ended}; {branch.notes}"}
+            )
+            continue
+        point = min(near, key=lambda one: abs(one.value - truth.number))
+        rows.append(_row(about, "turning point", number + 1, point.value, point.uncertainty, truth.number, truth.uncertainty))
+        if truth.measured:
+            value, uncertainty = point.measures[statement.measure], point.measure_uncertainty.get(statement.measure)
+            own = _of_text(truth.measured)
+            rows.append(_row(about, "measure there", number + 1, value, uncertainty, float(truth.measured), own))
+    invented = len(real) - len(statement.turning_points)
+    if invented > 0 and "turning_points_wanted" in statement.trace:
+        rows.append({**about, "what": "invented", "why": f"{len(real)} turning points, {len(statement.turning_points)} are there"})
+    for value in values:
+        assert statement.states is not None
+        met = found[value].states
+        for number, (state, text) in enumerate(zip(met, sorted(statement.states.measured, key=float), strict=False)):
+            uncertainty = state.uncertainty.get(statement.measure)
+            rows.append(
+                _row(about, "state", number + 1, state.measures[statement.measure], uncertainty, float(text), statement.states.uncertainty)
+            )
+        if len(met) < len(statement.states.measured):
+            rows.append({**about, "what": "state not found", "why": "; ".join(found[value].notes)})
+    spent = time.perf_counter() - began
+    return [{**row, "seconds": spent / len(rows)} for row in rows]
+
+
+def _arrays(measured: Any) -> Any:
+    return {name: tuple(np.asarray(column, dtype=float) for column in columns) for name, columns in measured.items()} if measured else None
+
+
+def _of_text(text: str) -> float:
+    """Half a unit of the last digit of a decimal."""
+    mantissa, _, power = text.lower().partition("e")
+    return 0.5 * 10.0 ** (int(power or 0) - len(mantissa.partition(".")[2]))
+
+
+def _row(about: Row, what: str, number: int, value: float, uncertainty: float | None, truth: float, own: float) -> Row:
+    error = abs(value - truth)
+    missed = uncertainty is not None and error > uncertainty + own + 1e-15 * abs(truth)
+    row = {**about, "what": what, "number": number, "value": value, "uncertainty": uncertainty, "truth": truth, "own": own, "error": error}
+    return {**row, "missed": missed}
+
+
+def _work(pair: tuple[Statement, str, str]) -> list[Row]:
+    statement, scheme, grid = pair
+    return held_against(statement, scheme, grid=grid)
+
+
+def table(rows: Iterable[Row], by: str) -> Iterator[str]:
+    """Lines of a table: one for each scheme or kind."""
+    groups: dict[str, list[Row]] = {}
+    for row in rows:
+        groups.setdefault(row[by], []).append(row)
+    heads = (
+        "problems",
+        "values",
+        "misses",
+        "no uncertainty",
+        "not found",
+        "median uncertainty/error",
+        "largest error/uncertainty",
+        "seconds",
+    )
+    yield f"| {by} | {' | '.join(heads)} |"
+    yield "| --- | --- | --- | --- | --- | --- | --- | --- | --- |"
+    for name, group in groups.items():
+        values = [row for row in group if "missed" in row]
+        given = [row for row in values if row["uncertainty"] is not None]
+        wide = [row["uncertainty"] / max(row["error"], row["own"], 1e-16 * abs(row["truth"])) for row in given]
+        worst = max((row["error"] / (row["uncertainty"] + row["own"]) for row in given if row["uncertainty"] + row["own"] > 0), default=0.0)
+        lost = sum(row["what"] in ("not found", "state not found", "failed") for row in group)
+        problems = len({row["name"] for row in group if row["what"] != "refused"})
+        yield (
+            f"| {name} | {problems} | {len(values)} | {sum(row['missed'] for row in values)} | {len(values) - len(given)} | {lost}"
+            f" | {np.median(wide) if wide else float('nan'):.0f} | {worst:.2f} | {sum(row.get('seconds', 0.0) for row in group):.0f} |"
+        )
+
+
+def main() -> int:
+    """Run what is asked for and print the tables; 1 where anything missed."""
+    options = argparse.ArgumentParser(description=__doc__)
+    options.add_argument("--schemes", default=",".join(bvp.schemes.names()))
+    options.add_argument("--kinds", default="")
+    options.add_argument("--grid", default="adaptive")
+    options.add_argument("--workers", type=int, default=1)
+    options.add_argument("--every", type=int, default=1, help="every n-th problem only")
+    options.add_argument("--out", type=Path)
+    asked = options.parse_args()
+    os.environ["OMP_NUM_THREADS"] = "1"
+    rows: list[Row] = []
+    if asked.out and asked.out.exists():
+        rows = [row for line in asked.out.read_text().splitlines() for row in json.loads(line)]
+    done = {(row["name"], row["scheme"]) for row in rows}
+    chosen = [one for one in read()[:: asked.every] if asked.kinds.replace("_", " ") in one.kind.replace("_", " ")]
+    pairs = [(one, scheme, asked.grid) for scheme in asked.schemes.split(",") for one in chosen if (one.name, scheme) not in done]
+    with ProcessPoolExecutor(asked.workers) as workers:
+        for new in workers.map(_work, pairs):
+            rows += new
+            if asked.out:
+                with asked.out.open("a") as file:
+                    file.write(json.dumps(new) + "\n")
+    for by in ("scheme", "kind", "what"):
+        print(*table(rows, by), "", sep="\n")
+    for row in rows:
+        if row.get("missed") or row["what"] in ("not found", "state not found", "failed", "invented"):
+            print({name: value for name, value in row.items() if name not in ("seconds", "missed")})
+    return 1 if any(row.get("missed") for row in rows) else 0
+
+
+if __name__ == "__main__":
+    sys.exit(main())
