@@ -5,7 +5,6 @@ A uniform grid is kept as long as it shows the state; so easy problems stay on i
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from dataclasses import dataclass
 from functools import cached_property
 
@@ -52,7 +51,7 @@ class Adaptation:
             return None
         shares = self.shares(system, u, parameter)
         largest, mean = float(shares.max()), float(shares.mean())
-        if not np.isfinite(largest) or largest <= (SEEN if system.grid.uniform else max(UNEVEN * mean, FINE)):
+        if not np.isfinite(largest) or largest <= max(UNEVEN * mean, SEEN if system.grid.uniform else FINE):
             return None
         current = system.grid.map if isinstance(system.grid.map, SmoothMap) else SmoothMap.identity()
         placed = current.redistributed(shares, is_symmetric(shares))
@@ -70,20 +69,6 @@ class Adaptation:
         """The density of a state by the index of its nodes."""
         places = system.places(parameter)
         return density((places - places[0]) / (places[-1] - places[0]), u[1:-1], system.of.problem.axis)
-
-    def settled(
-        self, system: DiscreteSystem, u: Array, solve: Callable[[DiscreteSystem, Array], Array | None], parameter: float
-    ) -> DiscreteSystem:
-        """The system on the grid that a state settles on: moved and solved again until nothing more moves, or a solve fails."""
-        for _ in range(MOST_MOVES):
-            following = self.better(system, u, parameter)
-            if following is None:
-                break
-            found = solve(following, moved_over(u, system, following))
-            if found is None:
-                break
-            system, u = following, found
-        return system
 
 
 def adaptation(problem: Problem, scheme: str | Scheme, along: str | None, intervals: int, compiled: bool) -> Adaptation | None:

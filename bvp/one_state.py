@@ -7,8 +7,10 @@ from collections.abc import Mapping
 import numpy as np
 import numpy.typing as npt
 
+from bvp.adapt import MOST_MOVES, Adaptation, adaptation, moved_over
 from bvp.discrete_system import DiscreteSystem
-from bvp.discretize import Discretization
+from bvp.discretize import discretization
+from bvp.errors import InputError, nearest
 from bvp.grid import Grid
 from bvp.newton import Corrected, Scales, correct, held_parameter
 from bvp.problem import Problem
@@ -27,22 +29,44 @@ def solve(
     *,
     intervals: int = 200,
     scheme: str | Scheme = "central",
-    grid: Grid | None = None,
+    grid: str | Grid = "uniform",
     guess: State | Array | None = None,
     compiled: bool = True,
 ) -> State:
     """One state of the scheme at the given parameter values, by damped Newton from the initial guess.
 
     Ends with `state.ok`, or with the last iterate and `state.reason`. Which of several states is found depends on the
-    guess; tracing a branch tells how many there are. InputError where the problem or the scheme cannot be discretized.
+    guess; tracing a branch tells how many there are. grid : "uniform", "adaptive" (nodes follow the state; what no grid
+    could be found for is said in the reason) or a Grid. InputError where the problem or scheme cannot be discretized.
     """
+    if isinstance(grid, str) and grid not in ("uniform", "adaptive"):
+        raise InputError(f'grid = "{grid}" is not known. {nearest(grid, ["uniform", "adaptive"])}')
     stated = problem.with_parameters(at or {})
-    used = grid or Grid(intervals)
+    used = grid if isinstance(grid, Grid) else Grid(intervals)
     along = next(iter(at or {}), None)
-    system = Discretization(stated, scheme, along, uniform=used.uniform, compiled=compiled).on(used)
+    system = discretization(stated, scheme, along, uniform=used.uniform, compiled=compiled).on(used, stated.parameters)
     parameter = stated.parameters.get(system.of.along, 0.0)
     start = system.guess(parameter) if guess is None else np.asarray(guess.nodal if isinstance(guess, State) else guess, dtype=float)
-    return state_of(system, solved(system, start, parameter))
+    found = solved(system, start, parameter)
+    adapting = adaptation(stated, scheme, along, intervals, compiled) if grid == "adaptive" else None
+    return state_of(system, found) if adapting is None else _settled(adapting, system, found)
+
+
+def _settled(adapting: Adaptation, system: DiscreteSystem, found: Corrected) -> State:
+    """The state on the grid that it settles on, each grid's state the guess for the next."""
+    for _ in range(MOST_MOVES):
+        following = adapting.better(system, found.u, found.parameter) if found.ok else None
+        if following is None:
+            return state_of(system, found)
+        again = solved(following, moved_over(found.u, system, following), found.parameter)
+        if not again.ok:
+            reason = f"the state is not resolved: on a grid that follows it, {again.reason}"
+            return state_of(system, found._replace(ok=False, reason=reason))
+        system, found = following, again
+    if adapting.better(system, found.u, found.parameter) is None:
+        return state_of(system, found)
+    reason = f"the state is not resolved: its nodes still move after {MOST_MOVES} grids"
+    return state_of(system, found._replace(ok=False, reason=reason))
 
 
 def solved(system: DiscreteSystem, u: Array, parameter: float) -> Corrected:

@@ -46,13 +46,8 @@ def document_of(result: object) -> dict[str, Any]:
 
 @document_of.register
 def _(result: Traced) -> dict[str, Any]:
-    case = result.case
     return {
-        "case": case.name,
-        "title": case.title,
-        "scheme": case.discretization.scheme,
-        "along": case.trace.along,
-        "intervals": case.discretization.intervals,
+        **_asked(result.case),
         "branches": [_branch(branch) for branch in result.branches],
         "turning_points": [_turning_point(point) for point in result.turning_points],
         "branch_points": [],  # none are looked for yet
@@ -91,13 +86,8 @@ def _(result: Solved) -> dict[str, Any]:
 
 @document_of.register
 def _(result: ReachedMeasure) -> dict[str, Any]:
-    case = result.case
     return {
-        "case": case.name,
-        "title": case.title,
-        "scheme": case.discretization.scheme,
-        "along": case.trace.along,
-        "intervals": case.discretization.intervals,
+        **_asked(result.case),
         "when": result.when,
         "points": [
             {
@@ -114,6 +104,16 @@ def _(result: ReachedMeasure) -> dict[str, Any]:
         ],
         "complete": result.complete,
         "notes": list(result.notes),
+    }
+
+
+def _asked(case: Case) -> dict[str, Any]:
+    return {
+        "case": case.name,
+        "title": case.title,
+        "scheme": case.discretization.scheme,
+        "along": case.trace.along,
+        "intervals": case.discretization.intervals,
     }
 
 

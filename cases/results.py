@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
@@ -32,8 +33,7 @@ class Traced:
     def kept_states(self) -> list[tuple[str, Any]]:
         """The profiles that were kept, each with what it is called."""
         named = [(f"{branch.name}, point {index}", branch.states[index]) for branch in self.branches for index in sorted(branch.states)]
-        turning = [(f"turning point {number}", point.state) for number, point in enumerate(self.turning_points, start=1)]
-        return named + [(name, state) for name, state in turning if state is not None]
+        return named + _numbered("turning point", self.turning_points)
 
 
 @dataclass(frozen=True)
@@ -49,7 +49,7 @@ class Solved:
     @property
     def kept_states(self) -> list[tuple[str, Any]]:
         """The profiles that were kept, each with what it is called."""
-        return [(f"state {number}", found.state) for number, found in enumerate(self.found.states, start=1) if found.state is not None]
+        return _numbered("state", self.found.states)
 
 
 @dataclass(frozen=True)
@@ -66,8 +66,13 @@ class ReachedMeasure:
     @property
     def kept_states(self) -> list[tuple[str, Any]]:
         """The profiles that were kept, each with what it is called."""
-        states = [getattr(point, "state", None) for point in self.found.points]
-        return [(f"place {number}", state) for number, state in enumerate(states, start=1) if state is not None]
+        return _numbered("place", self.found.points)
+
+
+def _numbered(word: str, found: Iterable[Any]) -> list[tuple[str, Any]]:
+    """The profiles of what was found, each with its number; those that were not kept are left out, and keep their number."""
+    states = [getattr(one, "state", None) for one in found]
+    return [(f"{word} {number}", state) for number, state in enumerate(states, start=1) if state is not None]
 
 
 Result = Traced | Solved | ReachedMeasure

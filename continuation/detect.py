@@ -5,7 +5,7 @@ from __future__ import annotations
 from continuation.path import Path, Point, inner
 
 MOST_HALVINGS = 8
-DIP = 0.3  # a pace that may fall below this share of its ends' lesser one, in between, is looked at more closely
+DIP = 0.7  # a pace that may fall below this share of its ends' lesser one, in between, is looked at more closely
 
 
 def paces_along(path: Path, before: Point, after: Point) -> tuple[float, float, float]:

@@ -89,6 +89,9 @@ def follow(
             if length < rule.smallest:
                 return Followed(points, WITHIN)
             continue
+        closed = edge is None and len(points) > 5 and closes(start, here, following)
+        if closed:  # the loop ends in its first point: what lies beyond has been met already
+            following = start._replace(arclength=here.arclength + distance_of(here, start))
         stretch = _looked_into(path, here, edge or following, 0)
         for before, after in zip([here, *stretch], stretch, strict=False):
             for detector in detectors:
@@ -99,7 +102,7 @@ def follow(
                 return Followed(points, ended)
         if edge is not None:
             return Followed(points, WITHIN)
-        if len(points) > 6 and closes(start, here, following):
+        if closed:
             return Followed(points, CLOSED)
         system = path.system
         here = moved(path, following, adaptation)

@@ -145,7 +145,7 @@ def _refined_place(setting: Setting, place: Place, detector: ValueDetector) -> R
         again = _found_again(on(intervals), Place(one.found, one.point._replace(u=disturbed), on(intervals)), intervals, even, detector)
         return again if isinstance(again, Place) else one
 
-    result = refined(place, system.grid.intervals, find, values, setting.digits or 8, repeat, kinked=system.of.problem.kinked)
+    result = refined(place, system.grid.intervals, find, values, setting.digits or 8, repeat, corners=system.of.problem.corners)
     names = [measure.text for measure in setting.measures]
     uncertainty = result.uncertainties[""] if setting.consistency.ok is True else None
     notes = list(result.notes) + (

@@ -22,7 +22,7 @@ COARSEST, FIRST_COARSE = 8, 48  # intervals of the coarsest grid: never fewer, a
 LEVELS = 4  # grids of each family before a first estimate
 FINEST = 1 << 14  # intervals beyond which a value is left with the uncertainty it has
 MOST_LEVELS = 12
-ROUGH_SETTLED = 1e-2  # relative uncertainty at which a value of an equation with a kink, whose changes are erratic, counts as settled
+ROUGH_SETTLED = 1e-2  # relative uncertainty at which a value of an equation with corners, whose changes are erratic, counts as settled
 
 
 @dataclass(frozen=True)
@@ -67,15 +67,16 @@ def refined(
     *,
     most: int = FINEST,
     coarsest: int | None = None,
-    kinked: bool = False,
+    corners: str = "",
 ) -> Refinement[Feature]:
     """Refine what was found on a grid of `intervals`.
 
     find(N, feature, M) looks on N intervals for the feature known on M, and returns it or a sentence why not. measure
     gives the numbers to extrapolate, the main one under "". repeat solves the finest again from disturbed data: what its
-    numbers differ by is the rounding of the solves. coarsest : an even number of intervals to begin with. kinked : the
-    equation is not smooth in its unknown. Ends once the main value has its digits, or at `most` intervals.
+    numbers differ by is the rounding of the solves. coarsest : an even number of intervals to begin with. corners : where
+    the equation has them (see Problem.corners). Ends once the main value has its digits, or at `most` intervals.
     """
+    rough = corners == "unknown"
     base = coarsest or int(np.clip(2 * (intervals // 16), COARSEST, FIRST_COARSE))
     families = (Family[Feature](base), Family[Feature](base * 3 // 2))
     known: dict[int, Feature] = {intervals: start}
@@ -104,7 +105,7 @@ def refined(
     )
     failures = {count: reason for count in grids if (reason := visit(count)) is not None}
     level = LEVELS
-    outcome = _extrapolated(families, values, {}, kinked)
+    outcome = _extrapolated(families, values, {}, rough)
     while level < MOST_LEVELS and (outcome is None or not _enough(outcome, digits)):
         finer = [family.coarsest << level for family in families]
         if finer[0] > min(most, MOST_INTERVALS):
@@ -113,7 +114,7 @@ def refined(
         if len([count for count in finer if count in failures]) == 2 and level >= LEVELS + 2:
             break
         level += 1
-        outcome = _extrapolated(families, values, {}, kinked) or (outcome if kinked else None)  # erratic: one grid may have none
+        outcome = _extrapolated(families, values, {}, rough) or (outcome if rough else None)  # erratic: one grid may have none
     finest = max(known)
     if outcome is None:
         reason = failures.get(max(failures)) if failures else "too few grids"
@@ -121,10 +122,12 @@ def refined(
         return Refinement(main, dict.fromkeys(main), None, (), False, start, intervals, (f"does not survive refinement: {reason}",))
     once, again = values(known[finest], finest), measure(repeat(known[finest], finest), finest)
     floors = {name: abs(again[name] - number) for name, number in once.items()}
-    outcome = _extrapolated(families, values, floors, kinked) or outcome
+    outcome = _extrapolated(families, values, floors, rough) or outcome
     limits, uncertainties, order, entries = outcome
-    rough = uncertainties[""] if kinked else None
-    survives = _settles(families, values) if rough is None else rough <= ROUGH_SETTLED * abs(limits[""])
+    survives = not rough and _settles(families, values)
+    if not survives and corners:
+        limits, uncertainties, order, entries = _extrapolated(families, values, floors, True) or outcome
+        survives = (uncertainties[""] or np.inf) <= ROUGH_SETTLED * abs(limits[""])
     if not survives:
         uncertainties = dict.fromkeys(uncertainties)
         notes.append("does not survive refinement: its value does not settle on finer grids")
@@ -142,7 +145,7 @@ def _extrapolated(
     families: Sequence[Family[Feature]],
     values: Callable[[Feature, int], Mapping[str, float]],
     floors: Mapping[str, float],
-    kinked: bool,
+    rough: bool,
 ) -> Outcome | None:
     runs = [family.run() for family in families]
     if any(len(run) < 3 for run in runs):
@@ -156,7 +159,7 @@ def _extrapolated(
         if not all(np.all(np.isfinite(column)) for column in columns):
             limits[name], uncertainties[name] = float("nan"), None
             continue
-        if kinked:
+        if rough:
             limit, uncertainty = combined_rough(
                 {count: float(numbers[name]) for one in taken for count, numbers in one.items()}, floors.get(name, 0.0)
             )

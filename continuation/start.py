@@ -13,7 +13,7 @@ from continuation.path import Path, Point
 Array = npt.NDArray[np.float64]
 
 MOST_TRIALS = 60
-FARTHEST = 1e12  # where no change of the tangent is seen, the end of looking for it
+FARTHEST = 1e50  # where no change of the tangent is seen, the end of looking for it
 BENT = 0.1  # relative change of the tangent that is looked for: a parameter that moves so far shows its own size
 
 

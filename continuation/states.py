@@ -224,7 +224,7 @@ def _real_state(setting: Setting, system: DiscreteSystem, found: Corrected, note
         again = solved(on(intervals), one.u * (1.0 + 1e-9 * np.cos(np.arange(one.u.size))), value)
         return again if again.ok else one
 
-    result = refined(found, system.grid.intervals, find, values, setting.digits or 8, repeat, kinked=system.of.problem.kinked)
+    result = refined(found, system.grid.intervals, find, values, setting.digits or 8, repeat, corners=system.of.problem.corners)
     if not result.survives:
         # Next to a turning point the coarse grids have lost the state already: begin with grids like the one it was found on.
         near = 2 * (system.grid.intervals // 4)
@@ -237,7 +237,7 @@ def _real_state(setting: Setting, system: DiscreteSystem, found: Corrected, note
             repeat,
             coarsest=near,
             most=8 * near,
-            kinked=system.of.problem.kinked,
+            corners=system.of.problem.corners,
         )
     if not result.survives:
         taken = values(found, system.grid.intervals)[""]

@@ -37,4 +37,4 @@ class StepLength:
 
 
 FOR_FIGURES = StepLength()  # points so close that a smooth curve goes through them
-ON_THE_WAY = StepLength(largest=1.0, turn=0.4, off=0.1)  # where nothing but a turning point is asked for
+ON_THE_WAY = StepLength(largest=0.7, turn=0.4, off=0.1)  # where nothing but a turning point is asked for

@@ -101,7 +101,7 @@ def trace(problem: Problem, along: str | None = None, **keywords: Any) -> Branch
     return traced(asked(problem, along, **keywords))
 
 
-def first_turning_point(problem: Problem, along: str | None = None, *, digits: int = 10, **keywords: Any) -> TurningPoint:
+def first_turning_point(problem: Problem, along: str | None = None, *, digits: int | None = 10, **keywords: Any) -> TurningPoint:
     """The first turning point of the branch in `along`; keywords as for `trace`.
 
     ComputationError where the branch ends before one, with the ending.

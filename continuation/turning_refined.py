@@ -107,7 +107,7 @@ def turning_point(setting: Setting, located: DiscreteTurning, position: float, b
         again = turning.near(on(intervals), disturbed, found.parameter * (1.0 + SINGULAR_SHIFT), found.null, found.curvature, found.scales)
         return again if isinstance(again, DiscreteTurning) else found
 
-    result = refined(located, system.grid.intervals, find, values, setting.digits, repeat, kinked=system.of.problem.kinked)
+    result = refined(located, system.grid.intervals, find, values, setting.digits, repeat, corners=system.of.problem.corners)
     notes += result.notes
     uncertainties = dict(result.uncertainties)
     if setting.consistency.ok is not True and result.survives:

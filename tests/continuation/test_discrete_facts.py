@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping
+from typing import Any
 
 import numpy as np
 import pytest
@@ -185,14 +186,14 @@ def test_exactly_solvable_scheme_has_its_closed_form_at_every_node(lam: float) -
 
 def test_states_of_three_and_four_intervals() -> None:
     # The states that are alike on both sides; the other two pairs lie on branches that leave this one at a pitchfork.
-    keywords = {"discrete": True, "grid": "uniform", "within": (-1.0, 4.0), "until": "max(u) > 15", "compiled": False}
-    three = continuation.states_at(interval(), at={"lam": 1.0}, intervals=3, **keywords)  # type: ignore[arg-type]
+    keywords: dict[str, Any] = {"discrete": True, "grid": "uniform", "within": (-1.0, 4.0), "until": "max(u) > 15", "compiled": False}
+    three = continuation.states_at(interval(), at={"lam": 1.0}, intervals=3, **keywords)
     for found, known in zip(three.states, CENTRAL_STATES_THREE_INTERVALS["lam 1"][:2], strict=True):
         assert found.state.u[1:-1] == pytest.approx(known, abs=1e-8)
     assert [found.unstable_directions for found in three.states] == [0, 2]  # past the pitchfork that the equation has not, at u = 3
-    four = continuation.states_at(interval(), at={"lam": 0.01}, intervals=4, **keywords)  # type: ignore[arg-type]
+    four = continuation.states_at(interval(), at={"lam": 0.01}, intervals=4, **keywords)
     assert four.states[1].state.u[1:-1] == pytest.approx(CENTRAL_INVENTED_FOUR_INTERVALS[0], abs=1e-6)
-    assert len(continuation.states_at(interval(), at={"lam": 0.2}, intervals=4, **keywords).states) == 2  # type: ignore[arg-type]
+    assert len(continuation.states_at(interval(), at={"lam": 0.2}, intervals=4, **keywords).states) == 2
 
 
 def test_branch_of_two_intervals_is_its_closed_form_over_hundreds_of_decades() -> None:
