@@ -10,12 +10,16 @@ import re
 import sys
 import tempfile
 import threading
+import time
 from pathlib import Path
 from types import CodeType, ModuleType
 
 from bvp.cache_folder import cache_folder
 
 MODULES_KEPT = 400  # about 100 kB each with their compiled kernels
+# One date of change for all: numba up to 0.60 or so recompiles where the date of a source has changed. Their name says what is
+# in them. The date of the last reading says when they were used last.
+CHANGED = 1e9
 _lock = threading.RLock()
 
 
@@ -67,7 +71,7 @@ def _written(text: str, name: str) -> str:
     path = folder / "generated" / f"{name}.py"
     try:
         if path.is_file() and path.read_text(encoding="utf-8") == text:
-            os.utime(path)  # so that those longest unused are known by their date
+            os.utime(path, (time.time(), CHANGED))
         else:
             path.parent.mkdir(exist_ok=True)
             _replace(path, text)
@@ -83,6 +87,7 @@ def _replace(path: Path, text: str) -> None:
     try:
         with os.fdopen(number, "w", encoding="utf-8") as file:
             file.write(text)
+        os.utime(temporary, (time.time(), CHANGED))
         Path(temporary).replace(path)
     except BaseException:
         Path(temporary).unlink(missing_ok=True)
@@ -94,7 +99,7 @@ def _remove_old_modules(folder: Path, keep: Path) -> None:
     dated = []
     for path in (folder / "generated").glob("*.py"):
         try:
-            dated.append((path.stat().st_mtime, path))
+            dated.append((path.stat().st_atime, path))
         except OSError:  # another process was faster
             continue
     if len(dated) <= MODULES_KEPT:

@@ -45,8 +45,10 @@ def graded(x: Array, shares: Array) -> Array:
     Away from a layer nodes then thin out in proportion to the distance from it, not at once.
     """
     lengths, ramp = 1.0 / shares, GRADING * x
+    shortest = float(lengths.min())
     lengths = np.minimum(lengths, ramp + np.minimum.accumulate(lengths - ramp))
-    return 1.0 / np.minimum(lengths, np.minimum.accumulate((lengths + ramp)[::-1])[::-1] - ramp)
+    lengths = np.minimum(lengths, np.minimum.accumulate((lengths + ramp)[::-1])[::-1] - ramp)
+    return 1.0 / np.maximum(lengths, shortest)  # where a length is lost beside the ramp
 
 
 def is_symmetric(shares: Array) -> bool:

@@ -14,6 +14,7 @@ import numpy as np
 import numpy.typing as npt
 
 from bvp.discrete_system import DiscreteSystem
+from bvp.ledger import Entry, ledger_in_use
 
 Array = npt.NDArray[np.float64]
 
@@ -100,6 +101,29 @@ def correct(
     Ends with ok where the next correction would be below `tolerance` in the norm of `scales`, else with a reason. The
     arrays given are not changed.
     """
+    ledger = ledger_in_use()
+    how = {"tolerance": tolerance, "most_steps": most_steps, "smallest_damping": smallest_damping}
+    if ledger is None:
+        return _corrected(system, u, parameter, border, scales, **how)
+    key = (float(system.size), float(parameter), float(border.distance), float(tolerance))
+    found = ledger.known(key)
+    if found is None:
+        found = _corrected(system, u, parameter, border, scales, **how)
+        ledger.note(Entry(key, found))
+    return found
+
+
+def _corrected(
+    system: DiscreteSystem,
+    u: Array,
+    parameter: float,
+    border: Border,
+    scales: Scales,
+    *,
+    tolerance: float,
+    most_steps: float,
+    smallest_damping: float,
+) -> Corrected:
     nodes = system.grid.intervals + 1
     u = u.copy()
     trial, step = np.empty_like(u), np.empty_like(u)

@@ -9,6 +9,7 @@ from dataclasses import dataclass, replace
 from typing import Any
 
 from bvp.errors import InputError
+from bvp.ledger import kept_in
 from cases import documents, report, run, settings, store
 from cases.build import along_of
 from cases.case import Case
@@ -71,7 +72,7 @@ def run_and_deliver(command: str, name_or_path: str, asked: Settings, *, when: s
         earlier = _finished_earlier(folder, question, asked) if asked.resume else None
         if earlier is not None:
             return earlier
-        _begin(folder, question)
+        _begin(folder, question, fresh=not asked.resume)
         return _outcome(_computed(question, notices, asked, folder), asked, folder, question.identity)
     finally:
         folder.close()
@@ -79,7 +80,7 @@ def run_and_deliver(command: str, name_or_path: str, asked: Settings, *, when: s
 
 def _computed(question: Question, notices: list[str], asked: Settings, folder: store.Folder | None) -> Result:
     _say_first_run(asked)
-    with _keeping(folder, asked) as keeper, Watch(along_of(question.case), quiet=asked.quiet, also=keeper) as watch:
+    with _keeping(folder, asked), Watch(along_of(question.case), quiet=asked.quiet) as watch:
         if question.command == "trace":
             result: Result = run.trace(question.case, watch)
         elif question.command == "solve":
@@ -91,14 +92,15 @@ def _computed(question: Question, notices: list[str], asked: Settings, folder: s
 
 
 @contextlib.contextmanager
-def _keeping(folder: store.Folder | None, asked: Settings) -> Iterator[Keeper | None]:
-    """What keeps the points of a trace while it goes on; whatever ends the work, those that came last are kept too."""
+def _keeping(folder: store.Folder | None, asked: Settings) -> Iterator[None]:
+    """Keeps what is found while the work goes on; whatever ends the work, what came last is kept too."""
     if folder is None:
-        yield None
+        yield
         return
-    keeper = Keeper(Pieces(folder.partial), quiet=asked.quiet)
+    keeper = Keeper(Pieces(folder.partial), quiet=asked.quiet, resume=asked.resume)
     try:
-        yield keeper
+        with kept_in(keeper):
+            yield
     finally:
         keeper.flush()
 
@@ -134,17 +136,18 @@ def _finished_earlier(folder: store.Folder, question: Question, asked: Settings)
         if not asked.quiet:
             print(f"{folder.path} holds this result already, finished.", file=sys.stderr)
         return Outcome((folder.path / (store.RESULT if asked.json else store.REPORT)).read_text(encoding="utf-8"))
-    if not asked.quiet:
-        print("the work was not finished; going on in the middle of it is not built yet, so it begins anew.", file=sys.stderr)
     return None
 
 
-def _begin(folder: store.Folder, question: Question) -> None:
-    """Mark the folder and put the case into it, before any work is done; InputError where that cannot be."""
+def _begin(folder: store.Folder, question: Question, *, fresh: bool) -> None:
+    """Mark the folder and put the case into it, before any work is done; InputError where that cannot be.
+
+    fresh : what an earlier run left unfinished goes.
+    """
     case = question.case
     store.refuse_other_run(folder.path, question.identity)
     try:
-        folder.begin(question.identity)
+        folder.begin(question.identity, fresh=fresh)
         folder.write(store.CASE, toml_text(case, question.command_line).encode())
         for name, file in case.measured.items():
             first, second = read_columns(case.folder / file, f"{case.origin}, [measured] {name}")

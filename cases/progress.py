@@ -6,7 +6,6 @@ import shutil
 import signal
 import sys
 import time
-from collections.abc import Callable
 from types import FrameType, TracebackType
 from typing import Any, TextIO
 
@@ -17,15 +16,14 @@ class Watch:
     """Sees each accepted point of a trace: keeps a line on a terminal up to date, and stops the trace after Ctrl-C.
 
     Used as a context manager. The first Ctrl-C asks the trace to stop with what it has; the second one ends the work at
-    once. `also` sees each event too, for instance to keep pieces.
+    once.
     """
 
-    def __init__(self, along: str, *, quiet: bool, stream: TextIO | None = None, also: Callable[[Any], None] | None = None) -> None:
+    def __init__(self, along: str, *, quiet: bool, stream: TextIO | None = None) -> None:
         self.along = along
         self.stopped = False
         self._stream = sys.stderr if stream is None else stream
         self._shown = not quiet and self._stream.isatty()
-        self._also = also
         self._began = self._last = time.monotonic()
         self._line_open = False
         self._earlier: dict[int, Any] = {}
@@ -46,8 +44,6 @@ class Watch:
 
     def __call__(self, event: Any) -> bool:
         """True asks the trace to stop."""
-        if self._also is not None:
-            self._also(event)
         now = time.monotonic()
         if self._shown and now - self._last >= SECONDS_BETWEEN:
             self._last = now

@@ -56,9 +56,10 @@ class Folder:
         """Where numbered pieces of unfinished work are kept."""
         return self.path / PARTIAL
 
-    def begin(self, identity: Mapping[str, Any]) -> None:
-        """Mark the folder as ours before any work is done; what an earlier run left unfinished goes."""
-        _remove_pieces(self.partial, mark_too=False)  # the mark itself is exchanged below, so that there always is one
+    def begin(self, identity: Mapping[str, Any], *, fresh: bool = True) -> None:
+        """Mark the folder as ours before any work is done; what an earlier run left unfinished goes where the work is begun afresh."""
+        if fresh:
+            _remove_pieces(self.partial, mark_too=False)  # the mark itself is exchanged below, so that there always is one
         try:
             self.partial.mkdir(exist_ok=True)
         except OSError as error:

@@ -173,9 +173,11 @@ def _traced_name(problem: Problem, at: Mapping[str, float]) -> str:
 
 
 def _direction(begin: float, value: float, asked_direction: str | None) -> str:
-    if asked_direction == "both":
-        return "both"
-    return "up" if value > begin else "down" if value < begin else asked_direction or "up"
+    """Towards the value from a parameter of 0, where most branches begin; both ways from elsewhere, lest a state be missed."""
+    towards = "up" if value > begin else "down"
+    if asked_direction is None:
+        return towards if begin == 0.0 and value != begin else "both"
+    return asked_direction if asked_direction == towards else "both"
 
 
 def _range(within: Any, begin: float, value: float) -> Any:

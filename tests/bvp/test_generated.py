@@ -74,6 +74,18 @@ def test_processes_that_race_all_succeed_and_a_later_one_compiles_nothing(tmp_pa
     assert not list(tmp_path.rglob("*.part"))
 
 
+def test_the_date_of_change_stays_whoever_uses_a_module(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    # older versions of numba compile again what has another date than its source had
+    monkeypatch.setattr(generated, "cache_folder", lambda: tmp_path)
+    dates = set()
+    for _ in range(3):
+        path = Path(generated.load("VALUE = 'dated'\n", "dated").__file__ or "")
+        dates.add(path.stat().st_mtime)
+        assert path.stat().st_atime > generated.CHANGED
+        del sys.modules[path.stem]
+    assert dates == {generated.CHANGED}
+
+
 def test_the_same_text_is_the_same_module() -> None:
     module = generated.load(TEXT, "first")
     assert generated.load(TEXT, "first") is module

@@ -7,13 +7,16 @@ import json
 import os
 import subprocess
 import sys
+from collections.abc import Iterable
 from pathlib import Path
-from types import SimpleNamespace
 from typing import Any
 
+import numpy as np
 import pytest
 
 from bvp.errors import InputError
+from bvp.ledger import Entry
+from bvp.newton import Corrected
 from cases.keep import Keeper
 from cases.pieces import Pieces
 from cases.store import StoreError, identity_of, intact, mark_of, open_folder, refuse_other_run, write_whole
@@ -227,23 +230,37 @@ def test_pieces_come_back_in_order_and_as_far_as_they_are_whole(tmp_path: Path) 
     assert json.loads(json.dumps(Pieces(tmp_path).read()[0].document)) == {"number": 1, "not finite": None}
 
 
-def event(point: int) -> Any:
-    """What a trace tells its watch of one point."""
-    return SimpleNamespace(branch="main", point=point, parameter=0.1 * point, measures={"max(u)": 0.2 * point}, turning_points=0)
+def entry(number: int) -> Entry:
+    """A result of Newton's method such as a trace keeps."""
+    values = {"pace": 0.5, "ok": True, "reason": "", "steps": 2, "sweeps": 3, "first": 1.0, "last": 1e-12}
+    counts = {"positive": 0, "negative": 5, "alike": True, "coupling": 1.0}
+    u = np.arange(5.0) + number
+    found = Corrected(u=u, parameter=0.1 * number, tangent=-u, **values, **counts)  # type: ignore[arg-type]
+    return Entry((5.0, float(number), 0.0, 1e-9), found)
 
 
-def test_points_are_kept_while_the_work_goes_on(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+def same(one: Corrected, other: Corrected) -> bool:
+    """Equality of all numbers, arrays among them."""
+    pairs: Iterable[tuple[Any, Any]] = zip(one, other, strict=True)
+    return all(np.array_equal(a, b) for a, b in pairs)
+
+
+def test_results_are_kept_while_the_work_goes_on_and_come_back(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     clock = [0.0]
     monkeypatch.setattr("cases.keep.time.monotonic", lambda: clock[0])
     keeper = Keeper(Pieces(tmp_path), quiet=True)
-    for point in range(10):
+    for number in range(10):
         clock[0] += 0.7
-        keeper(event(point))
-    pieces = Pieces(tmp_path).read()
-    assert [piece.arrays["parameter"].size for piece in pieces] == [3, 3, 3]
+        keeper.note(entry(number))
+    assert [len(piece.document["reasons"]) for piece in Pieces(tmp_path).read()] == [3, 3, 3]
     keeper.flush()
-    kept = Pieces(tmp_path).read()
-    assert [value for piece in kept for value in piece.arrays["max(u)"].tolist()] == [0.2 * point for point in range(10)]
+    again = Keeper(Pieces(tmp_path), quiet=True, resume=True)
+    for number in range(8):
+        known = again.known(entry(number).key)
+        assert known is not None
+        assert same(known, entry(number).found)
+    assert again.known((6.0, 8.0, 0.0, 1e-9)) is None  # another question: what follows belongs to another computation
+    assert again.known(entry(9).key) is None
 
 
 def test_keeping_that_fails_ends_the_keeping_alone(
@@ -255,7 +272,7 @@ def test_keeping_that_fails_ends_the_keeping_alone(
     pieces = Pieces(tmp_path)
     monkeypatch.setattr(pieces, "append", fail)
     keeper = Keeper(pieces, quiet=False)
-    for point in range(3):
-        keeper(event(point))
+    for number in range(3):
+        keeper.note(entry(number))
         keeper.flush()
     assert capsys.readouterr().err.count("No space left on device") == 1
