@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 from bvp.errors import ProblemError
 from bvp.formula import evaluate, float_functions, write
-from bvp.formula.tree import At, Name, Node, Prime, names_in, transform, walk
+from bvp.formula.tree import At, Call, Name, Node, Prime, names_in, transform, walk
 
 LEFT, RIGHT = "left", "right"
 
@@ -40,9 +40,9 @@ class Condition:
 
 
 def placed_condition(
-    tree: Node, text: str, origin: str, ends: tuple[Node, Node], parameters: Mapping[str, float], coordinate: str
+    tree: Node, text: str, origin: str, ends: tuple[Node, Node], parameters: Mapping[str, float], coordinate: str, unknowns: Sequence[str]
 ) -> Condition:
-    """The condition with each place recognised as the left or the right end.
+    """The condition with each place recognised as the left or the right end; a named formula of unknowns is meant at its end.
 
     Raises ProblemError where a place is no end of the domain.
     """
@@ -65,7 +65,26 @@ def placed_condition(
             f'{origin}: "{text}" holds no unknown at an end.\n'
             f"Expected: something like u(0) = 0 or u'({write(ends[1])}) + u({write(ends[1])}) = 0."
         )
-    return condition
+    return Condition(_at_its_end(condition, unknowns), text, origin)
+
+
+def _at_its_end(condition: Condition, unknowns: Sequence[str]) -> Node:
+    """The tree with unknowns that have no place, as they come out of a named formula, at the end where the condition stands."""
+
+    def placed(node: Node) -> Node | None:
+        if isinstance(node, At) or (isinstance(node, Call) and node.function == "integral"):
+            return node
+        if not (isinstance(node, Name) and node.name in unknowns):
+            return None
+        if len(condition.sides) != 1:
+            raise ProblemError(
+                f'{condition.origin}: "{condition.text}" holds a named formula of {node.name} and stands at both ends.\n'
+                f"At which end the formula is meant cannot be told.\nWrite it out, with {node.name} at its place."
+            )
+        (side,) = condition.sides
+        return At(node, Name(side), node.place)
+
+    return transform(condition.tree, placed)
 
 
 def same_number(left: Node, right: Node, parameters: Mapping[str, float]) -> bool:

@@ -19,8 +19,7 @@ ROUGH_SAFETY = 1.5
 SETTLED = 0.15  # how near to a whole number a measured exponent has to be: the next power contributes less than that
 STEADY = 0.75  # how much an exponent may change from grid to grid to be used at all
 HIGHEST = 14
-ROUNDING = (
-    2e-14  # relative, of a sum of a few hundred rounded terms that the solves leave; a chosen floor, far above what was measured (1e-15)
+ROUNDING = 4e-13  # relative: states are solved until their last correction is 1e-13 of them, and measures are sums of such values
 )
 
 

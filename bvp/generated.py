@@ -17,8 +17,8 @@ from types import CodeType, ModuleType
 from bvp.cache_folder import cache_folder
 
 MODULES_KEPT = 400  # about 100 kB each with their compiled kernels
-# One date of change for all: numba up to 0.60 or so recompiles where the date of a source has changed. Their name says what is
-# in them. The date of the last reading says when they were used last.
+# The date of change of all modules: older versions of numba (0.59 does) compile again where that of a source is another one,
+# and the name says what is in a module anyway. When one was used last is said by its date of reading.
 CHANGED = 1e9
 _lock = threading.RLock()
 

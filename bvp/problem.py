@@ -178,7 +178,7 @@ class Problem:
         for number, text in enumerate(texts, start=1):
             origin = f"{self.origin}, conditions, {number}"
             tree = self._with_where(difference_of_sides(parse(text, "condition", self.vocabulary, origin)))
-            placed.append(ends_conditions.placed_condition(tree, text, origin, self.ends, self.parameters, self.coordinate))
+            placed.append(ends_conditions.placed_condition(tree, text, origin, self.ends, self.parameters, self.coordinate, self.unknowns))
         needed = sum(equation.order for equation in self.equations)
         orders = ", ".join(f"{unknown} of order {equation.order}" for unknown, equation in zip(self.unknowns, self.equations, strict=True))
         why = f"as many as the orders of the equations together ({orders})"

@@ -77,7 +77,10 @@ def rows_of(problem: Problem, scheme: Scheme, along: str, uniform: bool) -> Rows
         return Row(*(cancel(each) for each in every))
 
     shape = Shape(problem, uniform)
+    scheme.used.clear()
     inner = row(scheme.row(equation, unknown, shape))
+    if scheme.typed:
+        scheme.refuse_unused(equation)
     axis = row(scheme.row(equation, unknown, Shape(problem, uniform, axis=True))) if problem.axis else None
     ends = {}
     for side in (LEFT, RIGHT):
@@ -166,7 +169,17 @@ def placement(problem: Problem, scheme: Scheme, uniform: bool) -> Callable[[Node
         return widths
     length = Binary("-", right, left) if left != Number(0.0) else right
 
+    def share(node: Node) -> Node | None:
+        """What of a coordinate, or of a difference of two, the length multiplies."""
+        if isinstance(node, Indexed) and node.name == x:
+            return Indexed(PLACE, node.offset)
+        return {STEP: PART, up(x): up(PLACE), down(x): down(PLACE)}.get(node)  # type: ignore[call-overload]
+
     def change(node: Node) -> Node | None:
+        if left == Number(0.0) and isinstance(node, Binary) and node.operator == "/":
+            above, below = share(node.left), share(node.right)
+            if above is not None and below is not None:
+                return Binary("/", above, below)  # a ratio does not know the length, and at the axis it may be infinite
         if isinstance(node, Indexed) and node.name == x:
             return add(left, multiply(length, Indexed(PLACE, node.offset)))
         if isinstance(node, Indexed) and node.name in scheme.weight_powers:

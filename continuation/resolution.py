@@ -5,6 +5,7 @@ from __future__ import annotations
 import numpy as np
 import numpy.typing as npt
 
+from bvp.errors import InputError
 from bvp.resample import carried
 from continuation.path import Path, Point
 
@@ -19,7 +20,10 @@ def resolves(path: Path, point: Point) -> bool:
     intervals = 2 * system.grid.intervals
     even = system.of.problem.axis
     u, tangent = carried(point.u, intervals, even), carried(point.tangent, intervals, even)
-    finer = Path(system.of.on(system.grid.refined(intervals), system.values), u, point.parameter, point.scales)
+    try:
+        finer = Path(system.of.on(system.grid.refined(intervals), system.values), u, point.parameter, point.scales)
+    except InputError:  # steps below the rounding of the coordinate
+        return False
     found = finer.step_from(Point(u, point.parameter, tangent, point.pace, 0.0, point.scales, point.found), 0.0)
     if not found.ok:
         return False

@@ -18,8 +18,36 @@ BENT = 0.1  # relative change of the tangent that is looked for: a parameter tha
 
 
 def first_state(system: DiscreteSystem, parameter: float, guess: Array | None) -> Corrected:
-    """The state at the parameter's start by damped Newton from a guess (the problem's own where None)."""
-    return solved(system, system.guess(parameter) if guess is None else guess, parameter)
+    """The state at the parameter's start by damped Newton from a guess (the problem's own where None).
+
+    Where no guess was given and zero leads nowhere, as with temperatures in kelvin, the line through what the conditions
+    say of the ends is tried too.
+    """
+    found = solved(system, system.guess(parameter) if guess is None else guess, parameter)
+    if found.ok or guess is not None or system.of.unknown in system.of.problem.initial_guess:
+        return found
+    again = solved(system, between_ends(system, parameter), parameter)
+    return again if again.ok else found
+
+
+def between_ends(system: DiscreteSystem, parameter: float) -> Array:
+    """The line between the constants that satisfy the conditions at the ends; an end without one takes the other's."""
+    ends = []
+    for row in (0, -1):
+        level = 0.0
+        for _ in range(20):
+            rows = system.stored_rows(np.full(system.size, level), parameter)
+            slope = float(rows[1:4, row].sum())
+            move = -float(rows[0, row]) / slope if slope else np.nan
+            if not np.isfinite(move) or abs(move) <= 1e-14 * abs(level):
+                break
+            level += move
+        flat = abs(slope) <= 1e-9 * float(np.abs(rows[1:4, row]).sum())  # u' = 0 says nothing of a constant
+        ends.append(level if np.isfinite(move) and not flat else None)
+    left, right = (ends[0] if ends[0] is not None else ends[1]), (ends[1] if ends[1] is not None else ends[0])
+    if left is None or right is None:
+        return np.zeros(system.size)
+    return left + (right - left) * system.grid.nodes
 
 
 def first_point(system: DiscreteSystem, found: Corrected, sign: float) -> tuple[Path, Point]:

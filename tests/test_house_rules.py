@@ -150,3 +150,40 @@ def test_every_reference_value_has_a_source() -> None:
 def test_a_source_that_says_nothing_is_no_source() -> None:
     assert not is_source("")
     assert not is_source("the literature")
+
+
+def named_in_guide() -> set[str]:
+    """The files and folders that DEVELOPERS.md names, from the top; a bare name belongs to the folder named before it."""
+    text = (ROOT / "DEVELOPERS.md").read_text(encoding="utf-8")
+    found: set[str] = set()
+    for line in text.splitlines():
+        folder = ""
+        for name in re.findall(r"`([\w./-]+(?:\.py|\.toml|/))`", line):
+            folder = name.partition("/")[0] + "/" if "/" in name and not folder else folder
+            found.add(name if "/" in name and (ROOT / name).exists() else folder + name)
+    return found
+
+
+def test_the_guide_names_every_file_of_the_product() -> None:
+    named = named_in_guide()
+    assert not named & {f"{package}/" for package in PACKAGES}  # which would stand for all
+    files = [path.relative_to(ROOT).as_posix() for package in PACKAGES for path in (ROOT / package).rglob("*.py")]
+    missing = [file for file in files if "__" not in file and not any(file == name or file.startswith(name) for name in named)]
+    assert missing == []
+
+
+def test_the_guide_names_no_tests_that_are_not_there() -> None:
+    text = (ROOT / "DEVELOPERS.md").read_text(encoding="utf-8")
+    paths = set(re.findall(r"`((?:tests|bvp|continuation|cases|\.ci)/[\w./]*)`", text))
+    assert len(paths) > 10
+    assert [path for path in sorted(paths) if not (ROOT / path).exists()] == []
+    modules = re.findall(r"python -m (tests[\w.]+)", text)
+    assert [module for module in modules if not (ROOT / (module.replace(".", "/") + ".py")).exists()] == []
+
+
+def test_continuous_integration_runs_what_the_readme_says() -> None:
+    readme = (ROOT / "README.md").read_text(encoding="utf-8")
+    script = (ROOT / ".ci" / "run").read_text(encoding="utf-8")
+    for step in ("-m venv .venv && .venv/bin/pip install ", "'.[test]' && .venv/bin/python -m pytest"):
+        assert step in readme
+        assert step in script

@@ -244,7 +244,7 @@ class _Parser(Reader):
         if name in OPERATORS and self.place != "equation":
             raise self.error(word, *advice.of_operator(name, self.place))
         can_measure = self.place == "measure" or (self.place == "condition" and name == "integral")
-        if name in ("mean", "rms", "integral") and not can_measure:
+        if name in MEASURES and name not in TWO_ARGUMENTS and not can_measure:
             raise self.error(word, *advice.of_measure(name, self.place))
         inside = self.arguments(word)
         if name in ("max", "min") and len(inside) == 1 and not can_measure:

@@ -13,7 +13,7 @@ TWO_ARGUMENTS = ("min", "max")
 OPERATORS = ("laplacian", "div", "grad")
 MEASURES = ("max", "min", "mean", "rms", "integral")
 CONSTANTS = ("pi", "π")
-RESERVED = (*ONE_ARGUMENT, *TWO_ARGUMENTS, *OPERATORS, "mean", "rms", "integral", *CONSTANTS)
+RESERVED = (*ONE_ARGUMENT, *TWO_ARGUMENTS, *OPERATORS, *MEASURES, *CONSTANTS)
 MADE = (
     "sign",
     "step_le",

@@ -124,7 +124,6 @@ def _folded(row: Node, shape: Shape) -> Node:
 def _differenced(scheme: Scheme, tree: Node, unknown: str, shape: Shape) -> Node:
     """Every derivative of a pointwise formula replaced by the scheme's difference, every plain u by its source."""
     problem = shape.problem
-    source = {name: scheme.formula("source", problem, name) for name in problem.unknowns}
     pairs = [pair for name in problem.unknowns for pair in scheme.replaced_terms(problem, name)]
     met: set[Node] = set()
 
@@ -141,8 +140,8 @@ def _differenced(scheme: Scheme, tree: Node, unknown: str, shape: Shape) -> Node
             return _divergence(scheme, node.arguments[0], shape, weighted=True)
         if isinstance(node, Call) and node.function == "grad":
             raise SchemeError(f'"{write(node)}" stands outside div.\nExpected: div(k*grad(u)), or u\' for the derivative itself.')
-        if isinstance(node, Name) and node.name in source:
-            stands_for = source[node.name]
+        if isinstance(node, Name) and node.name in problem.unknowns:
+            stands_for = scheme.formula("source", problem, node.name)
             return stands_for if stands_for is not None else node_value(node.name, 0)
         if isinstance(node, Name) and node.name == problem.coordinate:
             return node_value(node.name, 0)
@@ -164,7 +163,8 @@ def _primed(scheme: Scheme, node: Prime, shape: Shape) -> Node:
         if node.order == 1:
             return standard_or_own_first(scheme, inside.name, shape)
         if node.order == 2:
-            return _second(scheme, inside, shape)
+            plane = problem.exponent == 0 and scheme.texts.get("flux")  # there u'' is the divergence of u'
+            return _flux_laplacian(scheme, inside, shape) if plane else _second(scheme, inside, shape)
         raise SchemeError(
             f'"{write(node)}" is a derivative of order {node.order}.\nBuilt so far: first and second derivatives of each unknown.'
         )

@@ -27,6 +27,14 @@ FORMULA_KEYS = ("denominator", "flux", "volume", "axis", "first", "end", "source
 KEYS = (*FORMULA_KEYS, "replace")
 
 
+PLACES_OF_KEYS = {  # formulas without a place would be ignored in silence, and the scheme taken for another one
+    "flux": "for laplacian(u), div(…) and (…)'",
+    "denominator": "for second differences and divergences",
+    "source": "for u undifferentiated and outside a flux",
+    "right_hand_side": "for terms without derivatives",
+}
+
+
 @dataclass(frozen=True)
 class Shape:
     """Where a row stands: on which kind of grid, for which problem, at the axis or not."""
@@ -57,6 +65,7 @@ class Scheme:
     replacements: Mapping[str, str] = field(default_factory=dict)
     origin: str = ""
     typed: bool = False
+    used: set[str] = field(default_factory=set, compare=False, repr=False)  # keys that an equation has had a place for
 
     # -- what the engine asks ---------------------------------------------------------------------------------------
 
@@ -65,6 +74,7 @@ class Scheme:
         text = self.texts.get(key)
         if text is None:
             return None
+        self.used.add(key)
         place = f"{self.origin or self.name}, {key}"
         tree = parse(text, "scheme", problem.vocabulary, place)
         return in_names_of(tree, problem, unknown)
@@ -83,6 +93,15 @@ class Scheme:
             left, right = parse(term, "equation", stand_ins, place), parse(text, "scheme", own, place)
             pairs.append((in_names_of(left, problem, unknown), in_names_of(right, problem, unknown)))
         return pairs
+
+    def refuse_unused(self, equation: Equation) -> None:
+        """SchemeError where one of its main formulas has found no place in the equation whose rows were made of it."""
+        for key, place in PLACES_OF_KEYS.items():
+            if key in self.texts and key not in self.used:
+                raise SchemeError(
+                    f'{self.origin or self.name}: "{key}" finds no place in "{equation.text}".\n'
+                    f"It stands {place}: leave it out, or write the equation so."
+                )
 
     def needs_uniform_grid(self, problem: Problem) -> bool:
         """Whether its formulas hold the step, or a denominator, which have a meaning on uniform grids only."""

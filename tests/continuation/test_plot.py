@@ -115,7 +115,9 @@ def test_where_stability_is_not_defined_all_is_solid_and_a_line_says_so() -> Non
 def test_strip_says_how_many_states_there_are() -> None:
     assert words_of(figure_of(example("an S")), "states") == ["1 state", "3 states", "1 state"]
     cylinder = example("one turning point")
-    assert words_of(figure_of(cylinder), "states") == ["≥1", "2 states", "0 states"]
+    first, *others = words_of(figure_of(cylinder), "states")
+    assert first in ("≥1", "1 or more")  # the longer words where they fit, which depends on how wide matplotlib draws them
+    assert others == ["2 states", "0 states"]
     strips = [patch for patch in cylinder.patches if isinstance(patch, Rectangle) and patch.get_gid() == "strip"]
     edges = [(strip.get_x(), strip.get_x() + strip.get_width()) for strip in strips]
     assert edges[1] == pytest.approx((float(drawn_branches.cylinder().parameter[-1]), 2.0))
