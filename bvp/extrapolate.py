@@ -20,7 +20,6 @@ SETTLED = 0.15  # how near to a whole number a measured exponent has to be: the 
 STEADY = 0.75  # how much an exponent may change from grid to grid to be used at all
 HIGHEST = 14
 ROUNDING = 4e-13  # relative: states are solved until their last correction is 1e-13 of them, and measures are sums of such values
-)
 
 
 @dataclass(frozen=True)
