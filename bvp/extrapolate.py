@@ -19,6 +19,8 @@ ROUGH_SAFETY = 1.5
 SETTLED = 0.15  # how near to a whole number a measured exponent has to be: the next power contributes less than that
 STEADY = 0.75  # how much an exponent may change from grid to grid to be used at all
 HIGHEST = 14
+HIGHEST_FIRST = 4  # no scheme here is of a higher order: what shrinks faster on coarse grids is about to stop doing so,
+SLOWEST = 2.0  # so that an exponent that has not settled counts as two at most
 ROUNDING = 4e-13  # relative: states are solved until their last correction is 1e-13 of them, and measures are sums of such values
 
 
@@ -56,7 +58,7 @@ def usable_exponent(entries: Sequence[float], above: float, floor: float) -> int
     if last is None:
         return None
     whole = round(last)
-    if not above < whole <= HIGHEST:
+    if not above < whole <= (HIGHEST if above else HIGHEST_FIRST):
         return None
     gap, earlier = abs(last - whole), measured_exponent(entries[:-1], floor)
     if earlier is not None and abs(earlier - last) > STEADY:
@@ -78,7 +80,7 @@ def error_of_last(entries: Sequence[float], whole: int | None, floor: float) -> 
         return gap if gap <= 8.0 * floor else 2.0 * gap
     earlier = measured_exponent(entries[:-1], floor)
     coming = last - (1.0 if earlier is None else abs(last - earlier))
-    return gap / max(2.0**coming - 1.0, 0.5)
+    return gap / max(2.0 ** min(coming, SLOWEST) - 1.0, 0.5)
 
 
 def limit_of(entries: Sequence[float], floor: float) -> Limit:

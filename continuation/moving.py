@@ -7,6 +7,7 @@ from bvp.discrete_system import DiscreteSystem
 from bvp.newton import Scales
 from continuation.path import Path, Point
 
+ALONG = 0.9  # cosine between the tangents before and after a move: a branch must not be met from another side, or turned round
 LEAST_SIZE = 1e-100  # of a parameter: its square is still a number
 
 
@@ -27,11 +28,12 @@ def moved(path: Path, point: Point, adaptation: Adaptation | None) -> Point:
         began = moved_over(path.began[0], path.system, system)
         old, path.system = path.system, system
         found = path.step_from(base, 0.0)
-        if not found.ok:
-            path.system = old
+        before, path.began = path.began, (began, path.began[1])
+        landed = path.point(found, point.arclength, base) if found.ok else None
+        if landed is None or not landed.tangent_to(base) >= ALONG:
+            path.system, path.began = old, before
             break
-        path.began = (began, path.began[1])
-        point = path.point(found, point.arclength, base)
+        point = landed
     return point
 
 

@@ -12,6 +12,7 @@ from typing import Generic, TypeVar
 
 import numpy as np
 
+from bvp.errors import InputError
 from bvp.extrapolate import combined, combined_rough
 from bvp.grid import MOST_INTERVALS
 from continuation.records import Refined
@@ -91,7 +92,10 @@ def refined(
 
     def visit(count: int) -> str | None:
         nearest = min(known, key=lambda other: (abs(np.log(other / count)), -other))
-        found = known[count] if count in known else find(count, known[nearest], nearest)
+        try:
+            found = known[count] if count in known else find(count, known[nearest], nearest)
+        except InputError:  # a map whose steps have come below the rounding of the coordinate
+            found = "its nodes come too close to each other for this arithmetic"
         if isinstance(found, str):
             return found
         known[count] = found

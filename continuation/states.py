@@ -22,7 +22,7 @@ from continuation.asked import Asked, asked
 from continuation.crossing import crossings
 from continuation.path import Path, Point
 from continuation.records import Branch, TurningPoint
-from continuation.refinement import refined
+from continuation.refinement import FINEST, FIRST_COARSE, refined
 from continuation.tracing import setting_of, traced
 from continuation.turning_refined import Grids, Setting, measured
 
@@ -141,7 +141,10 @@ def _answer(
         if not polished.ok:
             notes.append(f"a state near {name} = {value:g} could not be solved to rounding: {polished.reason}")
             continue
-        state = _discrete_state(setting, system, polished) if discrete else _real_state(setting, system, polished, notes)
+        if discrete:
+            state: FoundState | None = _discrete_state(setting, system, polished)
+        else:
+            state = _real_state(setting, system, polished, notes, _coarsest(branch, value))
         if state is not None:
             states.append(state)
     first = asked_for.measures[0].text
@@ -206,7 +209,9 @@ def _discrete_state(setting: Setting, system: DiscreteSystem, found: Corrected) 
     return FoundState(taken, dict.fromkeys(taken), state.unstable_directions, state.residual, "main", state)
 
 
-def _real_state(setting: Setting, system: DiscreteSystem, found: Corrected, notes: list[str]) -> FoundState | None:
+def _real_state(
+    setting: Setting, system: DiscreteSystem, found: Corrected, notes: list[str], coarsest: int | None = None
+) -> FoundState | None:
     """The state of the equation that a discrete state leads to on finer grids; None where it leads to none."""
     on, value, even = Grids(system).on, found.parameter, system.of.problem.axis
 
@@ -226,21 +231,13 @@ def _real_state(setting: Setting, system: DiscreteSystem, found: Corrected, note
         again = solved(on(intervals), one.u * (1.0 + 1e-9 * np.cos(np.arange(one.u.size))), value)
         return again if again.ok else one
 
-    result = refined(found, system.grid.intervals, find, values, setting.digits or 8, repeat, corners=system.of.problem.corners)
+    digits, corners = setting.digits or 8, system.of.problem.corners
+    most = FINEST if coarsest is None else max(FINEST, 8 * coarsest)
+    result = refined(found, system.grid.intervals, find, values, digits, repeat, most=most, coarsest=coarsest, corners=corners)
     if not result.survives:
         # Next to a turning point the coarse grids have lost the state already: begin with grids like the one it was found on.
         near = 2 * (system.grid.intervals // 4)
-        result = refined(
-            found,
-            system.grid.intervals,
-            find,
-            values,
-            setting.digits or 8,
-            repeat,
-            coarsest=near,
-            most=8 * near,
-            corners=system.of.problem.corners,
-        )
+        result = refined(found, system.grid.intervals, find, values, digits, repeat, most=8 * near, coarsest=near, corners=corners)
     if not result.survives:
         taken = values(found, system.grid.intervals)[""]
         text = setting.measures[0].text
@@ -256,6 +253,22 @@ def _real_state(setting: Setting, system: DiscreteSystem, found: Corrected, note
     return FoundState(
         {name: result.values[name] for name in names}, uncertainties, state.unstable_directions, state.residual, "main", state
     )
+
+
+def _coarsest(branch: Branch, value: float) -> int | None:
+    """The coarsest grid to refine from where a scheme turns later than the equation, so that coarse grids have states too far apart.
+
+    As the root of a distance to the turning point that shrinks with the grid these follow no power of the step, until
+    that distance is small against the equation's own. None where the usual grids do.
+    """
+    for one in branch.turning_points:
+        outwards = 1.0 if one.states == "below" else -1.0
+        beyond, distance = outwards * (one.on_grid - one.value), outwards * (one.value - value)
+        if one.survives and beyond > 0.0 and distance > 0.0:
+            needed = branch.intervals * (4.0 * beyond / distance) ** (1.0 / max(one.order or 2.0, 1.0))
+            if needed > FIRST_COARSE:
+                return min(2 * math.ceil(needed / 2.0), MOST_INTERVALS_NEAR // 8)
+    return None
 
 
 def _finer_grid(branch: Branch, value: float) -> int | str | None:
