@@ -28,6 +28,7 @@ SEEN = 0.25  # of the density in one interval that a uniform grid may have
 UNEVEN = 2.5  # the largest share over the mean one, from which on a moved grid is moved again
 FEWEST = 8  # intervals below which a grid stays as it was asked for
 COARSE, FINE = 0.1, 0.05  # mean share of an interval from which on there are more of them, and the one that there is then
+LEAST_STEP = 1e-12  # relative to the coordinate: its rounding is then 2e-4 of the step
 MOST_GROWTH = 16  # times the intervals asked for
 MOST_MOVES = 12  # of a grid for one state: each makes the narrowest spacing up to twenty times narrower
 
@@ -59,16 +60,21 @@ class Adaptation:
         if largest <= UNEVEN * mean and mean > COARSE:
             intervals = min(2 * int(np.ceil(mean * intervals / FINE / 2)), MOST_GROWTH * self.intervals)
         grid = Grid(intervals, placed)
-        try:
-            _ = grid.nodes
-        except InputError:  # steps below the rounding of the coordinate: no grid in this arithmetic resolves the state
-            return None
-        return self.moved.on(grid, system.values)
+        return self.moved.on(grid, system.values) if is_sound(grid) else None
 
     def shares(self, system: DiscreteSystem, u: Array, parameter: float) -> Array:
         """The density of a state by the index of its nodes."""
         places = system.places(parameter)
         return density((places - places[0]) / (places[-1] - places[0]), u[1:-1], system.of.problem.axis)
+
+
+def is_sound(grid: Grid) -> bool:
+    """Whether the steps of a grid are well above the rounding of its coordinate."""
+    try:
+        nodes, _ = grid.nodes, grid.faces
+    except InputError:  # steps that are rounded away
+        return False
+    return bool(np.min(np.diff(nodes) / np.maximum(np.abs(nodes[1:]), np.abs(nodes[:-1]))) > LEAST_STEP)
 
 
 def adaptation(problem: Problem, scheme: str | Scheme, along: str | None, intervals: int, compiled: bool) -> Adaptation | None:

@@ -15,7 +15,7 @@ from itertools import pairwise
 
 SAFETY = 4.0  # what an estimated truncation error is multiplied by; the campaign of tests found no miss at 2
 FAMILIES_SAFETY = 2.0
-ROUGH_SAFETY = 1.5
+ROUGH_SAFETY = 3.0
 SETTLED = 0.15  # how near to a whole number a measured exponent has to be: the next power contributes less than that
 STEADY = 0.75  # how much an exponent may change from grid to grid to be used at all
 HIGHEST = 14

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+from dataclasses import replace
 
 import numpy as np
 import numpy.typing as npt
@@ -31,13 +32,15 @@ def solve(
     scheme: str | Scheme = "central",
     grid: str | Grid = "uniform",
     guess: State | Array | None = None,
+    extrapolate: bool = False,
     compiled: bool = True,
 ) -> State:
     """One state of the scheme at the given parameter values, by damped Newton from the initial guess.
 
     Ends with `state.ok`, or with the last iterate and `state.reason`. Which of several states is found depends on the
     guess; tracing a branch tells how many there are. grid : "uniform", "adaptive" (nodes follow the state; what no grid
-    could be found for is said in the reason) or a Grid. InputError where the problem or scheme cannot be discretized.
+    could be found for is said in the reason) or a Grid. extrapolate : the profile is that of halved steps taken to zero,
+    and `state.error` an estimate of its largest error. InputError where the problem or scheme cannot be discretized.
     """
     if isinstance(grid, str) and grid not in ("uniform", "adaptive"):
         raise InputError(f'grid = "{grid}" is not known. {nearest(grid, ["uniform", "adaptive"])}')
@@ -49,24 +52,30 @@ def solve(
     start = system.guess(parameter) if guess is None else np.asarray(guess.nodal if isinstance(guess, State) else guess, dtype=float)
     found = solved(system, start, parameter)
     adapting = adaptation(stated, scheme, along, intervals, compiled) if grid == "adaptive" else None
-    return state_of(system, found) if adapting is None else _settled(adapting, system, found)
+    if adapting is not None:
+        system, found = _settled(adapting, system, found)
+    state = state_of(system, found)
+    if extrapolate and state.ok:
+        from bvp.extrapolated_state import extrapolated  # which solves on coarser grids
+
+        profile, error = extrapolated(system, found)
+        return replace(state, u=profile, error=error)
+    return state
 
 
-def _settled(adapting: Adaptation, system: DiscreteSystem, found: Corrected) -> State:
-    """The state on the grid that it settles on, each grid's state the guess for the next."""
+def _settled(adapting: Adaptation, system: DiscreteSystem, found: Corrected) -> tuple[DiscreteSystem, Corrected]:
+    """The grid that a state settles on and the state there, each grid's state the guess for the next."""
     for _ in range(MOST_MOVES):
         following = adapting.better(system, found.u, found.parameter) if found.ok else None
         if following is None:
-            return state_of(system, found)
+            return system, found
         again = solved(following, moved_over(found.u, system, following), found.parameter)
         if not again.ok:
-            reason = f"the state is not resolved: on a grid that follows it, {again.reason}"
-            return state_of(system, found._replace(ok=False, reason=reason))
+            return system, found._replace(ok=False, reason=f"the state is not resolved: on a grid that follows it, {again.reason}")
         system, found = following, again
     if adapting.better(system, found.u, found.parameter) is None:
-        return state_of(system, found)
-    reason = f"the state is not resolved: its nodes still move after {MOST_MOVES} grids"
-    return state_of(system, found._replace(ok=False, reason=reason))
+        return system, found
+    return system, found._replace(ok=False, reason=f"the state is not resolved: its nodes still move after {MOST_MOVES} grids")
 
 
 def solved(system: DiscreteSystem, u: Array, parameter: float) -> Corrected:

@@ -34,6 +34,7 @@ class State:
     reason: str
     newton_steps: int
     unstable_directions: int | None = None
+    error: float | None = None  # an estimate of the largest error of an extrapolated profile
     nodal: Array = field(default_factory=lambda: np.empty(0), repr=False)  # with ghosts, for going on from here
     residual_of: Callable[[], float] = field(default=lambda: float("nan"), repr=False)
 

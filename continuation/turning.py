@@ -21,8 +21,9 @@ from continuation.path import Path, Point, border_through, norm_of
 Array = npt.NDArray[np.float64]
 
 MOST_SECANTS = 40
-SMOOTH_TRIALS = 12  # more than secants take where the equation is smooth
-MOST_HALVINGS, NARROW = 50, 1e-13
+MOST_DISTANCE = 2.0
+TOO_FAR = "the turning point is too far from that of the neighbouring grid"
+FIRST_STEP, NARROW = 1e-3, 1e-13  # of halving: the first step to either side, and the width that is small enough
 POLISHED = 1e-12  # of the state: the last correction of the states on the way
 LEVEL = 1e-11  # what is left of the derivative, as a share of the curvature times the state
 
@@ -90,12 +91,13 @@ def near(system: DiscreteSystem, u: Array, parameter: float, null: Array, curvat
     path = Path(system, u, parameter, scales)
     direction = null / norm_of(null, 0.0, scales)
     base = Point(u, parameter, direction, 0.0, 0.0, scales, None)  # type: ignore[arg-type]
+    if system.of.problem.corners == "unknown":
+        return _by_halving(path, base, curvature)
     guess = (u, parameter)
     distance, slope = 0.0, curvature
     last: tuple[float, float] | None = None
-    sides: dict[bool, tuple[float, Corrected]] = {}
     smallest = np.inf
-    for trial in range(MOST_SECANTS + MOST_HALVINGS):
+    for _ in range(MOST_SECANTS):
         found = path.counted(correct(system, guess[0], guess[1], border_through(base, distance), scales, tolerance=POLISHED, most_steps=20))
         if not found.ok:
             return found.reason
@@ -107,22 +109,32 @@ def near(system: DiscreteSystem, u: Array, parameter: float, null: Array, curvat
             return _turning(found, scales, slope, distance)
         smallest = min(smallest, abs(move))
         last = (distance, found.pace)
-        sides[found.pace > 0.0] = (distance, found)
-        if trial >= SMOOTH_TRIALS and len(sides) == 2:
-            # Where a node passes a kink of the equation the derivative jumps: there its sign is closed in on by halving.
-            (rising, left), (falling, right) = sides[True], sides[False]
-            if abs(falling - rising) <= NARROW:
-                return _turning(found, scales, math.copysign(curvature, rising - falling), distance)
-            distance = 0.5 * (rising + falling)
-            guess = (0.5 * (left.u + right.u), 0.5 * (left.parameter + right.parameter))
-            continue
-        if trial >= MOST_SECANTS:
-            break
-        if trial >= SMOOTH_TRIALS:
-            move *= 2.0 ** (trial - SMOOTH_TRIALS + 1)  # a slope taken over a corner is far too steep
         move = max(-0.3, min(move, 0.3))
         distance += move
-        if abs(distance) > 2.0:
-            return "the turning point is too far from that of the neighbouring grid"
+        if abs(distance) > MOST_DISTANCE:
+            return TOO_FAR
         guess = (found.u + move * found.tangent, found.parameter + move * found.pace)
     return f"no turning point within {MOST_SECANTS} secants"
+
+
+def _by_halving(path: Path, base: Point, curvature: float) -> DiscreteTurning | str:
+    """The same where the equation has corners: the derivative jumps wherever a node passes one, so only its sign is used."""
+    found = path.step_from(base, 0.0, (base.u, base.parameter), POLISHED)
+    ends: dict[bool, tuple[float, Corrected]] = {}
+    distance, step = 0.0, FIRST_STEP
+    while found.ok:
+        ends[found.pace > 0.0] = (distance, found)
+        if len(ends) == 2:
+            (rising, left), (falling, right) = ends[True], ends[False]
+            if abs(falling - rising) <= NARROW:
+                return _turning(found, base.scales, math.copysign(curvature, rising - falling), distance)
+            distance = 0.5 * (rising + falling)
+            guess = (0.5 * (left.u + right.u), 0.5 * (left.parameter + right.parameter))
+        else:
+            move = math.copysign(step, -found.pace * curvature)
+            distance, step = distance + move, 2.0 * step
+            guess = (found.u + move * found.tangent, found.parameter + move * found.pace)
+            if abs(distance) > MOST_DISTANCE:
+                return TOO_FAR
+        found = path.step_from(base, distance, guess, POLISHED)
+    return found.reason

@@ -24,8 +24,10 @@ from bvp.errors import ComputationError, InputError
 from tests.campaign.statement import Statement, read
 
 Row = dict[str, Any]
+LOST = ("not found", "state not found", "failed", "fault")
 NEAR = 1e-2  # relative: a computed turning point farther from a truth than this is another one
 DIGITS = 8
+LONGEST = 150  # points of a branch: the states asked for lie before and after the first turning point
 
 
 def held_against(statement: Statement, scheme: str, *, grid: str = "adaptive", states: bool = True) -> list[Row]:
@@ -33,6 +35,7 @@ def held_against(statement: Statement, scheme: str, *, grid: str = "adaptive", s
     began = time.perf_counter()
     about = {"name": statement.name, "kind": statement.kind, "scheme": scheme}
     keywords = {**statement.trace, "measure": statement.measure, "scheme": scheme, "grid": grid, "digits": DIGITS, "compiled": False}
+    keywords |= {"longest": LONGEST} if states else {"turning_points_wanted": len(statement.turning_points)}
     try:
         problem = bvp.Problem(**{**statement.problem, "measured": _arrays(statement.problem.get("measured"))})
         values = [statement.states.at] if states and statement.states is not None else []
@@ -51,13 +54,14 @@ def held_against(statement: Statement, scheme: str, *, grid: str = "adaptive", s
             )
             continue
         point = min(near, key=lambda one: abs(one.value - truth.number))
-        rows.append(_row(about, "turning point", number + 1, point.value, point.uncertainty, truth.number, truth.uncertainty))
+        row = _row(about, "turning point", number + 1, point.value, point.uncertainty, truth.number, truth.uncertainty)
+        rows.append({**row, "order": point.order, "grids": [(one.intervals, one.value) for one in point.refinement]})
         if truth.measured:
             value, uncertainty = point.measures[statement.measure], point.measure_uncertainty.get(statement.measure)
             own = _of_text(truth.measured)
             rows.append(_row(about, "measure there", number + 1, value, uncertainty, float(truth.measured), own))
     invented = len(real) - len(statement.turning_points)
-    if invented > 0 and "turning_points_wanted" in statement.trace:
+    if invented > 0 and not states:
         rows.append({**about, "what": "invented", "why": f"{len(real)} turning points, {len(statement.turning_points)} are there"})
     for value in values:
         assert statement.states is not None
@@ -90,9 +94,13 @@ def _row(about: Row, what: str, number: int, value: float, uncertainty: float | 
     return {**row, "missed": missed}
 
 
-def _work(pair: tuple[Statement, str, str]) -> list[Row]:
-    statement, scheme, grid = pair
-    return held_against(statement, scheme, grid=grid)
+def _work(pair: tuple[Statement, str, str, bool]) -> list[Row]:
+    statement, scheme, grid, states = pair
+    try:
+        return held_against(statement, scheme, grid=grid, states=states)
+    except Exception as fault:  # a fault of the tool: the rest of the campaign still counts
+        about = {"name": statement.name, "kind": statement.kind, "scheme": scheme}
+        return [{**about, "what": "fault", "why": f"{type(fault).__name__}: {fault}", "seconds": 0.0}]
 
 
 def table(rows: Iterable[Row], by: str) -> Iterator[str]:
@@ -107,21 +115,22 @@ def table(rows: Iterable[Row], by: str) -> Iterator[str]:
         "no uncertainty",
         "not found",
         "median uncertainty/error",
+        "95 %",
         "largest error/uncertainty",
         "seconds",
     )
     yield f"| {by} | {' | '.join(heads)} |"
-    yield "| --- | --- | --- | --- | --- | --- | --- | --- | --- |"
+    yield "| " + "--- | " * (len(heads) + 1)
     for name, group in groups.items():
         values = [row for row in group if "missed" in row]
         given = [row for row in values if row["uncertainty"] is not None]
         wide = [row["uncertainty"] / max(row["error"], row["own"], 1e-16 * abs(row["truth"])) for row in given]
         worst = max((row["error"] / (row["uncertainty"] + row["own"]) for row in given if row["uncertainty"] + row["own"] > 0), default=0.0)
-        lost = sum(row["what"] in ("not found", "state not found", "failed") for row in group)
+        lost = sum(row["what"] in LOST for row in group)
         problems = len({row["name"] for row in group if row["what"] != "refused"})
         yield (
             f"| {name} | {problems} | {len(values)} | {sum(row['missed'] for row in values)} | {len(values) - len(given)} | {lost}"
-            f" | {np.median(wide) if wide else float('nan'):.0f} | {worst:.2f} | {sum(row.get('seconds', 0.0) for row in group):.0f} |"
+            f" | {np.median(wide) if wide else float('nan'):.0f} | {np.percentile(wide, 95) if wide else float('nan'):.0f} | {worst:.2f} | {sum(row.get('seconds', 0.0) for row in group):.0f} |"
         )
 
 
@@ -133,6 +142,8 @@ def main() -> int:
     options.add_argument("--grid", default="adaptive")
     options.add_argument("--workers", type=int, default=1)
     options.add_argument("--every", type=int, default=1, help="every n-th problem only")
+    options.add_argument("--first", type=int, default=0, help="and of those, starting with this one")
+    options.add_argument("--no-states", action="store_true", help="turning points only, the trace ends with the last")
     options.add_argument("--out", type=Path)
     asked = options.parse_args()
     os.environ["OMP_NUM_THREADS"] = "1"
@@ -140,8 +151,13 @@ def main() -> int:
     if asked.out and asked.out.exists():
         rows = [row for line in asked.out.read_text().splitlines() for row in json.loads(line)]
     done = {(row["name"], row["scheme"]) for row in rows}
-    chosen = [one for one in read()[:: asked.every] if asked.kinds.replace("_", " ") in one.kind.replace("_", " ")]
-    pairs = [(one, scheme, asked.grid) for scheme in asked.schemes.split(",") for one in chosen if (one.name, scheme) not in done]
+    chosen = [one for one in read()[asked.first :: asked.every] if asked.kinds.replace("_", " ") in one.kind.replace("_", " ")]
+    pairs = [
+        (one, scheme, asked.grid, not asked.no_states)
+        for scheme in asked.schemes.split(",")
+        for one in chosen
+        if (one.name, scheme) not in done
+    ]
     with ProcessPoolExecutor(asked.workers) as workers:
         for new in workers.map(_work, pairs):
             rows += new
@@ -151,7 +167,7 @@ def main() -> int:
     for by in ("scheme", "kind", "what"):
         print(*table(rows, by), "", sep="\n")
     for row in rows:
-        if row.get("missed") or row["what"] in ("not found", "state not found", "failed", "invented"):
+        if row.get("missed") or row["what"] in (*LOST, "invented"):
             print({name: value for name, value in row.items() if name not in ("seconds", "missed")})
     return 1 if any(row.get("missed") for row in rows) else 0
 
