@@ -106,7 +106,8 @@ def near(system: DiscreteSystem, u: Array, parameter: float, null: Array, curvat
             slope = measured if math.isfinite(measured) and measured != 0.0 and abs(distance - last[0]) > 1e-7 else slope
         move = -found.pace / slope
         if abs(move) <= LEVEL or (abs(move) <= 1e-7 and abs(move) >= smallest):
-            return _turning(found, scales, slope, distance)
+            # What is left of the way does not count in the parameter, but does in the state, whose measures it would blur.
+            return _turning(found._replace(u=found.u + move * found.tangent), scales, slope, distance + move)
         smallest = min(smallest, abs(move))
         last = (distance, found.pace)
         move = max(-0.3, min(move, 0.3))
