@@ -128,10 +128,20 @@ def table(rows: Iterable[Row], by: str) -> Iterator[str]:
         worst = max((row["error"] / (row["uncertainty"] + row["own"]) for row in given if row["uncertainty"] + row["own"] > 0), default=0.0)
         lost = sum(row["what"] in LOST for row in group)
         problems = len({row["name"] for row in group if row["what"] != "refused"})
-        yield (
-            f"| {name} | {problems} | {len(values)} | {sum(row['missed'] for row in values)} | {len(values) - len(given)} | {lost}"
-            f" | {np.median(wide) if wide else float('nan'):.0f} | {np.percentile(wide, 95) if wide else float('nan'):.0f} | {worst:.2f} | {sum(row.get('seconds', 0.0) for row in group):.0f} |"
-        )
+        middle, most = (np.percentile(wide, 50), np.percentile(wide, 95)) if wide else (np.nan, np.nan)
+        missed, seconds = sum(row["missed"] for row in values), sum(row.get("seconds", 0.0) for row in group)
+        cells = [
+            problems,
+            len(values),
+            missed,
+            len(values) - len(given),
+            lost,
+            f"{middle:.0f}",
+            f"{most:.0f}",
+            f"{worst:.2f}",
+            f"{seconds:.0f}",
+        ]
+        yield f"| {name} | {' | '.join(map(str, cells))} |"
 
 
 def main() -> int:
