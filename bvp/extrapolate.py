@@ -71,6 +71,7 @@ def error_of_last(entries: Sequence[float], whole: int | None, floor: float) -> 
 
     That exponent is the settled one; else the last measured less its change from the one before, or less 1 where there
     is no earlier one; else none, as where the differences do not shrink in one direction: twice the difference then.
+    Where it leaps up the difference before counts, with the exponent before and little more.
     """
     gap = abs(entries[-1] - entries[-2])
     if whole is not None:
@@ -79,6 +80,9 @@ def error_of_last(entries: Sequence[float], whole: int | None, floor: float) -> 
     if last is None:
         return gap if gap <= 8.0 * floor else 2.0 * gap
     earlier = measured_exponent(entries[:-1], floor)
+    if earlier is not None and last - earlier > STEADY:
+        # Two terms of the error pass each other: the difference is small there and says nothing of what is to come.
+        return max(gap, abs(entries[-2] - entries[-3]) / 2.0 ** (earlier + 2.0 * STEADY))
     coming = last - (1.0 if earlier is None else abs(last - earlier))
     return gap / max(2.0 ** min(coming, SLOWEST) - 1.0, 0.5)
 

@@ -97,6 +97,7 @@ def near(system: DiscreteSystem, u: Array, parameter: float, null: Array, curvat
     distance, slope = 0.0, curvature
     last: tuple[float, float] | None = None
     smallest = np.inf
+    fresh = False
     for _ in range(MOST_SECANTS):
         found = path.counted(correct(system, guess[0], guess[1], border_through(base, distance), scales, tolerance=POLISHED, most_steps=20))
         if not found.ok:
@@ -106,6 +107,9 @@ def near(system: DiscreteSystem, u: Array, parameter: float, null: Array, curvat
             slope = measured if math.isfinite(measured) and measured != 0.0 and abs(distance - last[0]) > 1e-7 else slope
         move = -found.pace / slope
         if abs(move) <= LEVEL or (abs(move) <= 1e-7 and abs(move) >= smallest):
+            if found.last > LEVEL and not fresh:  # the pace is that of the state before Newton's last correction
+                fresh, guess = True, (found.u, found.parameter)
+                continue
             # What is left of the way does not count in the parameter, but does in the state, whose measures it would blur.
             return _turning(found._replace(u=found.u + move * found.tangent), scales, slope, distance + move)
         smallest = min(smallest, abs(move))

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
@@ -16,7 +17,7 @@ from bvp.resample import carried
 from continuation import turning
 from continuation.path import Path, Point
 from continuation.records import TurningPoint
-from continuation.refinement import refined
+from continuation.refinement import Refinement, refined
 from continuation.turning import DiscreteTurning
 
 Array = npt.NDArray[np.float64]
@@ -109,7 +110,7 @@ def turning_point(setting: Setting, located: DiscreteTurning, position: float, b
 
     result = refined(located, system.grid.intervals, find, values, setting.digits, repeat, corners=system.of.problem.corners)
     notes += result.notes
-    uncertainties = dict(result.uncertainties)
+    uncertainties = _of_measures(result, system.of.problem.corners == "unknown")
     if setting.consistency.ok is not True and result.survives:
         uncertainties = dict.fromkeys(uncertainties)
         notes.append(f"the value is the scheme's own: {setting.consistency.reason}")
@@ -130,6 +131,23 @@ def turning_point(setting: Setting, located: DiscreteTurning, position: float, b
         {name: uncertainties[name] for name in names},
         notes,
     )
+
+
+def _of_measures(result: Refinement[DiscreteTurning], rough: bool) -> dict[str, float | None]:
+    """The uncertainties of all numbers: a turning point's place along the branch is known less well than its parameter.
+
+    The place is solved for to LEVEL of the state. Where the equation has corners it is where the parameter is largest on
+    each grid, so that an uncertainty e of the parameter is one of about sqrt(e) of the place.
+    """
+    main, value = result.uncertainties[""], result.values[""]
+    share = 2.0 * turning.LEVEL
+    if rough and main is not None and value:
+        share += math.sqrt(main / abs(value))
+    found = {}
+    for name, uncertainty in result.uncertainties.items():
+        least = share * abs(result.values[name]) if name else 0.0
+        found[name] = None if uncertainty is None else max(uncertainty, least)
+    return found
 
 
 def _record(

@@ -277,8 +277,11 @@ def _face_flux(scheme: Scheme, flux: Node, side: int, shape: Shape, exponent: in
     area = power(node_value(x, HALF * side), exponent)
     held = None
 
+    # A scheme with a formula of its own for the axis says that its flux is none between the axis and its neighbour.
+    plain = shape.axis and "axis" in scheme.texts
+
     def gradient(name: str) -> Node:
-        own = scheme.formula("flux", problem, name)
+        own = None if plain else scheme.formula("flux", problem, name)
         if own is None:
             return over(minus(node_value(name, far), node_value(name, near)), width(x, near, far, shape))
         moved = own if side > 0 else shifted(own, -1)
@@ -298,7 +301,7 @@ def _face_flux(scheme: Scheme, flux: Node, side: int, shape: Shape, exponent: in
             return node_value(x, HALF * side)
         return None
 
-    held = _own_flux_alone(scheme, flux, side, shape)
+    held = None if plain else _own_flux_alone(scheme, flux, side, shape)
     return held if held is not None else times(area, transform(flux, change))
 
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from bvp.formula import derivative
-from bvp.formula.tree import Binary, Call, Name, Node, Number, Prime, substituted, transform
+from bvp.formula.tree import Binary, Call, Name, Node, Number, Prime, substituted, transform, walk
 from bvp.problem import Equation
 from bvp.schemes.difference import difference_row, minus, node_value, over, width
 from bvp.schemes.scheme import Scheme, Shape, at_node
@@ -28,16 +28,28 @@ class Upwind(Scheme):
         slope = Prime(Name(unknown), 1)
         if shape.axis:
             return difference_row(self, equation, unknown, shape)
-        leading = leading_coefficient(equation.tree, unknown)
-        flow = at_node(_without(over(derivative(equation.tree, slope), leading), unknown), 0, shape.problem)
+        # A derivative inside a flux is no flow: it is differenced at the faces, and has no side.
+        fluxes = {node: Name(f"#flux {number}") for number, node in enumerate(filter(is_flux, walk(equation.tree)))}
+        open_tree = transform(equation.tree, fluxes.get)
+        leading = leading_coefficient(open_tree, unknown)
+        flow = at_node(_without(over(derivative(open_tree, slope), leading), unknown), 0, shape.problem)
         x = shape.problem.coordinate
         forward = over(minus(node_value(unknown, 1), node_value(unknown, 0)), width(x, 0, 1, shape))
         backward = over(minus(node_value(unknown, 0), node_value(unknown, -1)), width(x, -1, 0, shape))
         against = Binary("+", backward, Binary("*", Call("step_le", (Number(0.0), flow)), minus(forward, backward)))
         stand_in = Name("#against")
-        placed = substituted(equation.tree, slope, stand_in)
+        placed = substituted(open_tree, slope, stand_in)
+        for flux, name in fluxes.items():
+            placed = substituted(placed, name, flux)
         row = difference_row(self, Equation(placed, equation.text, equation.order), unknown, shape)
         return substituted(row, stand_in, against)
+
+
+def is_flux(node: Node) -> bool:
+    """Whether a node is (k*u')' or div(k*grad(u)): a bracket that is differentiated and holds derivatives itself."""
+    if isinstance(node, Call):
+        return node.function == "div"
+    return isinstance(node, Prime) and any(isinstance(part, Prime) for part in walk(node.operand))
 
 
 def leading_coefficient(tree: Node, unknown: str) -> Node:
