@@ -22,6 +22,7 @@ HIGHEST = 14
 HIGHEST_FIRST = 4  # no scheme here is of a higher order: what shrinks faster on coarse grids is about to stop doing so,
 SLOWEST = 2.0  # so that an exponent that has not settled counts as two at most
 ROUNDING = 4e-13  # relative: states are solved until their last correction is 1e-13 of them, and measures are sums of such values
+ROUNDING_OF_EXTREME = 2e-14  # of a value that has an extremum at the state, so that the state's rounding enters squared
 
 
 @dataclass(frozen=True)
@@ -66,17 +67,20 @@ def usable_exponent(entries: Sequence[float], above: float, floor: float) -> int
     return whole if gap <= SETTLED else None
 
 
-def error_of_last(entries: Sequence[float], whole: int | None, floor: float) -> float:
+def error_of_last(entries: Sequence[float], whole: int | None, floor: float, removed: float = 0.0) -> float:
     """The error of the last entry: its difference from the one before, over what the exponent to come divides it by.
 
     That exponent is the settled one; else the last measured less its change from the one before, or less 1 where there
     is no earlier one; else none, as where the differences do not shrink in one direction: twice the difference then.
-    Where it leaps up the difference before counts, with the exponent before and little more.
+    Where it leaps up the difference before counts, with the exponent before and little more. Two entries have no
+    measured exponent, but the powers of a series rise: it is no less than the one removed before, `removed`.
     """
     gap = abs(entries[-1] - entries[-2])
     if whole is not None:
         return gap / (2.0**whole - 1.0)
     last = measured_exponent(entries, floor)
+    if len(entries) == 2 and removed > 0.0:
+        return gap / (2.0**removed - 1.0)
     if last is None:
         return gap if gap <= 8.0 * floor else 2.0 * gap
     earlier = measured_exponent(entries[:-1], floor)
@@ -101,7 +105,7 @@ def limit_of(entries: Sequence[float], floor: float) -> Limit:
         if len(column) < 2:
             break
         whole = usable_exponent(column, removed, noise)
-        error = max(error_of_last(column, whole, noise), noise)
+        error = max(error_of_last(column, whole, noise, removed), noise)
         if best is None or error < best.error:
             best = Limit(column[-1], error, order, depth)
         if whole is None:
@@ -114,12 +118,15 @@ def limit_of(entries: Sequence[float], floor: float) -> Limit:
     return best
 
 
-def combined(first: Sequence[float], second: Sequence[float], floor: float) -> tuple[Limit, float]:
-    """The limit of two families, and its uncertainty; the second family's grids are 3/2 as fine as the first's."""
+def combined(first: Sequence[float], second: Sequence[float], floor: float, rounding: float = ROUNDING) -> tuple[Limit, float]:
+    """The limit of two families, and its uncertainty; the second family's grids are 3/2 as fine as the first's.
+
+    floor : the rounding of the entries. rounding : the same as a share of the value, where it is known beforehand.
+    """
     one, other = limit_of(first, floor), limit_of(second, floor)
     better = other if other.error <= one.error else one
     apart = abs(one.value - other.value)
-    uncertainty = max(SAFETY * better.error, FAMILIES_SAFETY * apart, ROUNDING * abs(better.value), 2.0 * floor)
+    uncertainty = max(SAFETY * better.error, FAMILIES_SAFETY * apart, rounding * abs(better.value), 2.0 * floor)
     return better, uncertainty
 
 
