@@ -62,7 +62,7 @@ def usable_exponent(entries: Sequence[float], above: float, floor: float) -> int
     if not above < whole <= (HIGHEST if above else HIGHEST_FIRST):
         return None
     gap, earlier = abs(last - whole), measured_exponent(entries[:-1], floor)
-    if earlier is not None and abs(earlier - last) > STEADY:
+    if (earlier is None and len(entries) > 3) or (earlier is not None and abs(earlier - last) > STEADY):
         return None  # one that only passes by a whole number on its way says nothing
     return whole if gap <= SETTLED else None
 
@@ -73,14 +73,15 @@ def error_of_last(entries: Sequence[float], whole: int | None, floor: float, rem
     That exponent is the settled one; else the last measured less its change from the one before, or less 1 where there
     is no earlier one; else none, as where the differences do not shrink in one direction: twice the difference then.
     Where it leaps up the difference before counts, with the exponent before and little more. Two entries have no
-    measured exponent, but the powers of a series rise: it is no less than the one removed before, `removed`.
+    measured exponent, but the powers of a series rise: it is no less than the one removed before, `removed`; two at most
+    count here too, for a map of the nodes that is smooth to some order only ends the series there.
     """
     gap = abs(entries[-1] - entries[-2])
     if whole is not None:
         return gap / (2.0**whole - 1.0)
     last = measured_exponent(entries, floor)
     if len(entries) == 2 and removed > 0.0:
-        return gap / (2.0**removed - 1.0)
+        return gap / (2.0 ** min(removed, SLOWEST) - 1.0)
     if last is None:
         return gap if gap <= 8.0 * floor else 2.0 * gap
     earlier = measured_exponent(entries[:-1], floor)

@@ -14,6 +14,7 @@ from cases.words import NUMERICAL_ONLY, head_of_measure, head_of_name
 from continuation.digits import rounded_safe, significant, with_uncertainty
 
 SAFE_DIGITS = 3
+MANY = 3.0  # times a limit, from where on its per cent say less
 
 Lines = Iterator[str]
 
@@ -220,7 +221,8 @@ def _margin(case: Case, margin: Mapping[str, Any]) -> Lines:
         return
     along = _along(case)
     unit = f" {case.unit(along)}" if case.unit(along) else ""
-    share = "" if margin["share"] is None else f", {significant(100 * abs(margin['share']), 3)} % of it"
+    size = None if margin["share"] is None else abs(margin["share"])
+    share = "" if size is None else f", {significant(100 * size, 3)} % of it" if size < MANY else f", {significant(size, 3)} times as much"
     way = "beyond" if margin["past"] else "short of"
     yield ""
     yield from wrapped(

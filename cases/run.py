@@ -77,7 +77,8 @@ def _for_states(keywords: Mapping[str, Any], value: float) -> dict[str, Any]:
 def _reason(ended: str, notes: tuple[str, ...]) -> str:
     if ended == INTERRUPTED:
         return "interrupted; what was found until then is given."
-    return notes[-1] if notes else f"the trace ended early ({ended})."
+    told = [note for note in notes if note.startswith("the trace ended")] or [*notes, f"the trace ended early ({ended})."]
+    return told[0]
 
 
 def _once(notes: list[str]) -> tuple[str, ...]:

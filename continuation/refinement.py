@@ -13,7 +13,7 @@ from typing import Generic, TypeVar
 import numpy as np
 
 from bvp.errors import InputError
-from bvp.extrapolate import combined, combined_rough
+from bvp.extrapolate import ROUNDING, combined, combined_rough
 from bvp.grid import MOST_INTERVALS
 from continuation.records import Refined
 
@@ -69,13 +69,16 @@ def refined(
     most: int = FINEST,
     coarsest: int | None = None,
     corners: str = "",
+    rounding: float = ROUNDING,
+    blur: float = 0.0,
 ) -> Refinement[Feature]:
     """Refine what was found on a grid of `intervals`.
 
     find(N, feature, M) looks on N intervals for the feature known on M, and returns it or a sentence why not. measure
     gives the numbers to extrapolate, the main one under "". repeat solves the finest again from disturbed data: what its
     numbers differ by is the rounding of the solves. coarsest : an even number of intervals to begin with. corners : where
-    the equation has them (see Problem.corners). Ends once the main value has its digits, or at `most` intervals.
+    the equation has them (see Problem.corners). rounding : of the main value, relative. blur : what rounding leaves of the
+    other numbers besides, relative, for each intervals^(3/2). Ends once the main value has its digits, or at `most` intervals.
     """
     rough = corners == "unknown"
     base = coarsest or int(np.clip(2 * (intervals // 16), COARSEST, FIRST_COARSE))
@@ -109,7 +112,7 @@ def refined(
     )
     failures = {count: reason for count in grids if (reason := visit(count)) is not None}
     level = LEVELS
-    outcome = _extrapolated(families, values, {}, rough)
+    outcome = _extrapolated(families, values, {}, rough, rounding)
     while level < MOST_LEVELS and (outcome is None or not _enough(outcome, digits)):
         finer = [family.coarsest << level for family in families]
         if finer[0] > min(most, MOST_INTERVALS):
@@ -118,19 +121,20 @@ def refined(
         if len([count for count in finer if count in failures]) == 2 and level >= LEVELS + 2:
             break
         level += 1
-        outcome = _extrapolated(families, values, {}, rough) or (outcome if rough else None)  # erratic: one grid may have none
+        outcome = _extrapolated(families, values, {}, rough, rounding) or (outcome if rough else None)  # erratic: one grid may have none
     finest = max(known)
     if outcome is None:
         reason = failures.get(max(failures)) if failures else "too few grids"
         main = values(start, intervals)
         return Refinement(main, dict.fromkeys(main), None, (), False, start, intervals, (f"does not survive refinement: {reason}",))
     once, again = values(known[finest], finest), measure(repeat(known[finest], finest), finest)
-    floors = {name: abs(again[name] - number) for name, number in once.items()}
-    outcome = _extrapolated(families, values, floors, rough) or outcome
+    share = blur * finest**1.5
+    floors = {name: max(abs(again[name] - number), share * abs(number) if name else 0.0) for name, number in once.items()}
+    outcome = _extrapolated(families, values, floors, rough, rounding) or outcome
     limits, uncertainties, order, entries = outcome
     survives = not rough and _settles(families, values)
     if not survives and corners:
-        limits, uncertainties, order, entries = _extrapolated(families, values, floors, True) or outcome
+        limits, uncertainties, order, entries = _extrapolated(families, values, floors, True, rounding) or outcome
         survives = (uncertainties[""] or np.inf) <= ROUGH_SETTLED * abs(limits[""])
     if not survives:
         uncertainties = dict.fromkeys(uncertainties)
@@ -150,6 +154,7 @@ def _extrapolated(
     values: Callable[[Feature, int], Mapping[str, float]],
     floors: Mapping[str, float],
     rough: bool,
+    rounding: float,
 ) -> Outcome | None:
     runs = [family.run() for family in families]
     if any(len(run) < 3 for run in runs):
@@ -168,7 +173,7 @@ def _extrapolated(
                 {count: float(numbers[name]) for one in taken for count, numbers in one.items()}, floors.get(name, 0.0)
             )
         else:
-            limit, uncertainty = combined(columns[0], columns[1], floors.get(name, 0.0))
+            limit, uncertainty = combined(columns[0], columns[1], floors.get(name, 0.0), ROUNDING if name else rounding)
         limits[name], uncertainties[name] = limit.value, uncertainty
         if not name:
             order = limit.order

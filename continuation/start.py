@@ -13,6 +13,7 @@ from continuation.path import Path, Point
 Array = npt.NDArray[np.float64]
 
 MOST_TRIALS = 60
+MOST_LEVELS = 12
 FARTHEST = 1e50  # where no change of the tangent is seen, the end of looking for it
 BENT = 0.1  # relative change of the tangent that is looked for: a parameter that moves so far shows its own size
 
@@ -21,33 +22,43 @@ def first_state(system: DiscreteSystem, parameter: float, guess: Array | None) -
     """The state at the parameter's start by damped Newton from a guess (the problem's own where None).
 
     Where no guess was given and zero leads nowhere, as with temperatures in kelvin, the line through what the conditions
-    say of the ends is tried too.
+    say of the ends is tried too, looked for from zero, from the sizes of the parameters and from inside measured tables.
     """
     found = solved(system, system.guess(parameter) if guess is None else guess, parameter)
     if found.ok or guess is not None or system.of.unknown in system.of.problem.initial_guess:
         return found
-    again = solved(system, between_ends(system, parameter), parameter)
-    return again if again.ok else found
+    for level in levels(system):
+        line = between_ends(system, parameter, level)
+        again = solved(system, line, parameter) if line is not None else None
+        if again is not None and again.ok:
+            return again
+    return found
 
 
-def between_ends(system: DiscreteSystem, parameter: float) -> Array:
-    """The line between the constants that satisfy the conditions at the ends; an end without one takes the other's."""
-    ends = []
-    for row in (0, -1):
-        level = 0.0
-        for _ in range(20):
-            rows = system.stored_rows(np.full(system.size, level), parameter)
-            slope = float(rows[1:4, row].sum())
-            move = -float(rows[0, row]) / slope if slope else np.nan
-            if not np.isfinite(move) or abs(move) <= 1e-14 * abs(level):
-                break
-            level += move
-        flat = abs(slope) <= 1e-9 * float(np.abs(rows[1:4, row]).sum())  # u' = 0 says nothing of a constant
-        ends.append(level if np.isfinite(move) and not flat else None)
-    left, right = (ends[0] if ends[0] is not None else ends[1]), (ends[1] if ends[1] is not None else ends[0])
-    if left is None or right is None:
-        return np.zeros(system.size)
-    return left + (right - left) * system.grid.nodes
+def levels(system: DiscreteSystem) -> list[float]:
+    """Constants from which the conditions are solved, each once: zero, middles of measured tables, values of parameters."""
+    tables = [float(function.knots[[0, -1]].mean()) for function in system.of.problem.functions.values() if hasattr(function, "knots")]
+    return list(dict.fromkeys([0.0, *tables, *system.values.values()]))[:MOST_LEVELS]
+
+
+def between_ends(system: DiscreteSystem, parameter: float, level: float) -> Array | None:
+    """The line between the constants that satisfy the conditions at the ends; an end that says nothing takes the other's."""
+    ends = [end for row in (0, -1) if (end := _constant_at(system, parameter, row, level)) is not None]
+    return ends[0] + (ends[-1] - ends[0]) * system.grid.nodes if ends else None
+
+
+def _constant_at(system: DiscreteSystem, parameter: float, row: int, level: float) -> float | None:
+    """The constant that satisfies the condition of a row, by Newton's method; None where it is not met by one, or by all."""
+    for _ in range(MOST_TRIALS):
+        rows = system.stored_rows(np.full(system.size, level), parameter)
+        slope = float(rows[1:4, row].sum())
+        move = -float(rows[0, row]) / slope if slope else np.nan
+        if not np.isfinite(move) or abs(slope) <= 1e-9 * float(np.abs(rows[1:4, row]).sum()):  # u' = 0 holds for every constant
+            return None
+        level += move
+        if abs(move) <= 1e-12 * abs(level):
+            return level
+    return None
 
 
 def first_point(system: DiscreteSystem, found: Corrected, sign: float) -> tuple[Path, Point]:

@@ -11,6 +11,7 @@ import numpy.typing as npt
 
 from bvp.consistency import Consistency
 from bvp.discrete_system import DiscreteSystem
+from bvp.extrapolate import ROUNDING_OF_EXTREME
 from bvp.measures import Measure
 from bvp.one_state import state_of
 from bvp.resample import carried
@@ -22,6 +23,9 @@ from continuation.turning import DiscreteTurning
 
 Array = npt.NDArray[np.float64]
 
+# What is 1 in u'' is h^2 in the matrix, whose entries are rounded each for itself: the place where it is singular is only
+# known to about eps N^2/sqrt(N) of the state, the same however often it is solved for. Half of BLUR was seen with a strong flow.
+BLUR = 2.0 * float(np.finfo(float).eps)
 SINGULAR_SHIFT = 1e-9  # relative disturbance of the data from which the finest grid is solved a second time
 
 
@@ -108,9 +112,13 @@ def turning_point(setting: Setting, located: DiscreteTurning, position: float, b
         again = turning.near(on(intervals), disturbed, found.parameter * (1.0 + SINGULAR_SHIFT), found.null, found.curvature, found.scales)
         return again if isinstance(again, DiscreteTurning) else found
 
-    result = refined(located, system.grid.intervals, find, values, setting.digits, repeat, corners=system.of.problem.corners)
+    corners = system.of.problem.corners
+    # At a turning point the parameter has an extremum along the branch: the rounding of the state enters it squared.
+    result = refined(
+        located, system.grid.intervals, find, values, setting.digits, repeat, corners=corners, rounding=ROUNDING_OF_EXTREME, blur=BLUR
+    )
     notes += result.notes
-    uncertainties = _of_measures(result, system.of.problem.corners == "unknown")
+    uncertainties = _of_measures(result, corners == "unknown")
     if setting.consistency.ok is not True and result.survives:
         uncertainties = dict.fromkeys(uncertainties)
         notes.append(f"the value is the scheme's own: {setting.consistency.reason}")
@@ -136,13 +144,11 @@ def turning_point(setting: Setting, located: DiscreteTurning, position: float, b
 def _of_measures(result: Refinement[DiscreteTurning], rough: bool) -> dict[str, float | None]:
     """The uncertainties of all numbers: a turning point's place along the branch is known less well than its parameter.
 
-    The place is solved for to LEVEL of the state. Where the equation has corners it is where the parameter is largest on
-    each grid, so that an uncertainty e of the parameter is one of about sqrt(e) of the place.
+    Where the equation has corners it is where the parameter is largest on each grid, so that an uncertainty e of the
+    parameter is one of about sqrt(e) of the place.
     """
     main, value = result.uncertainties[""], result.values[""]
-    share = 2.0 * turning.LEVEL
-    if rough and main is not None and value:
-        share += math.sqrt(main / abs(value))
+    share = math.sqrt(main / abs(value)) if rough and main is not None and value else 0.0
     found = {}
     for name, uncertainty in result.uncertainties.items():
         least = share * abs(result.values[name]) if name else 0.0
