@@ -7,6 +7,7 @@ factor, whatever the profile. A scheme without that property converges beautiful
 
 from __future__ import annotations
 
+import math
 import random
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
@@ -16,6 +17,7 @@ from bvp.discretize import Discretization
 from bvp.formula import evaluate
 from bvp.formula.series import Series, SeriesError, series_functions
 from bvp.formula.tree import At, Call, Indexed, Name, Node, Prime
+from bvp.given import GivenFunction
 from bvp.rows import AXIS, PART, PLACE
 from bvp.schemes.scheme import STEP
 
@@ -72,7 +74,7 @@ def _factor(
     length = right - left
     given = {name: value if value else chance.uniform(0.3, 0.9) for name, value in values.items()}
     # A smooth profile of that size in units of the domain, even at the axis; its derivatives are random.
-    profile = [size * chance.uniform(0.3, 1.0)] + [size * chance.uniform(-1.0, 1.0) / (order + 1) for order in range(1, TERMS)]
+    profile = [_level(of, size, chance)] + [size * chance.uniform(-1.0, 1.0) / (order + 1) for order in range(1, TERMS)]
     place = [0.5 if condition is None else 0.0 if _at_left(condition) else 1.0, 1.0] + [0.0] * (TERMS - 2)
     if not of.uniform:
         place[2] = chance.uniform(-0.3, 0.3)
@@ -89,12 +91,25 @@ def _factor(
     value = _constant_term(continuous)
     row_series = row_series if isinstance(row_series, Series) else Series.constant(float(row_series), TERMS)
     power = row_series.valuation
-    scale = max((abs(row_series.coefficient(power + order)) for order in range(3)), default=0.0)
+    seen = range(power, min(power + 3, row_series.end))
+    scale = max((abs(row_series.coefficient(order)) for order in seen), default=0.0)
     while abs(row_series.coefficient(power)) <= 1e-9 * scale and power < row_series.end - 1:
         power += 1
     if abs(value) <= 1e-9 * max(scale, 1e-300):
         return power, 0.0
-    return power, row_series.coefficient(power) / value
+    factor = row_series.coefficient(power) / value
+    if not math.isfinite(factor):
+        raise SeriesError("it has no finite value at the profiles tried")
+    return power, factor
+
+
+def _level(of: Discretization, size: float, chance: random.Random) -> float:
+    """A random value of the unknown: of that size, or from inside a measured table, which has none outside."""
+    for function in of.problem.functions.values():
+        if hasattr(function, "knots"):
+            lowest, highest = float(function.knots[0]), float(function.knots[-1])
+            return lowest + (highest - lowest) * chance.uniform(0.3, 0.7)
+    return size * chance.uniform(0.3, 1.0)
 
 
 def _at_left(condition: Node) -> bool:
@@ -123,7 +138,20 @@ def _other_functions(of: Discretization) -> dict[str, Callable[..., Any]]:
 
         return of_series
 
-    return {name: expanded(function) for name, function in of.problem.functions.items() if hasattr(function, "table")}
+    def given(function: GivenFunction) -> Callable[..., Any]:
+        def of_several(*arguments: Any, orders: tuple[int, ...] = ()) -> Any:
+            bases = [one.coefficient(0) if isinstance(one, Series) else one for one in arguments]
+            terms = [float(function.evaluate(*bases, orders=orders))]
+            rises = [one.coefficient(1) if isinstance(one, Series) else 0.0 for one in arguments]
+            known = list(zip(rises, function.partials, strict=True))
+            if not any(orders) and all(partial is not None or rise == 0.0 for rise, partial in known):
+                terms.append(sum(rise * float(partial(*bases)) for rise, partial in known if partial is not None and rise))
+            return Series(terms)  # what is not known of it is not made up
+
+        return of_several
+
+    functions = of.problem.functions.items()
+    return {name: given(one) if isinstance(one, GivenFunction) else expanded(one) for name, one in functions}
 
 
 def _series(coefficients: list[float], shift: float = 1.0) -> Series:

@@ -71,23 +71,24 @@ def error_of_last(entries: Sequence[float], whole: int | None, floor: float, rem
     """The error of the last entry: its difference from the one before, over what the exponent to come divides it by.
 
     That exponent is the settled one; else the last measured less its change from the one before, or less 1 where there
-    is no earlier one; else none, as where the differences do not shrink in one direction: twice the difference then.
-    Where it leaps up the difference before counts, with the exponent before and little more. Two entries have no
-    measured exponent, but the powers of a series rise: it is no less than the one removed before, `removed`; two at most
-    count here too, for a map of the nodes that is smooth to some order only ends the series there.
+    is no earlier one. Two entries have no measured exponent, but the powers of a series rise: it is no less than the one
+    removed before, `removed`; two at most count here too, for a map of the nodes that is smooth to some order only ends
+    the series there. Where the last difference is small because two terms of the error pass each other (its exponent
+    leaps up, or it has changed its sign) it says nothing of what is to come: the difference before counts, with the
+    slowest power that can be left.
     """
     gap = abs(entries[-1] - entries[-2])
     if whole is not None:
         return gap / (2.0**whole - 1.0)
     last = measured_exponent(entries, floor)
-    if len(entries) == 2 and removed > 0.0:
-        return gap / (2.0 ** min(removed, SLOWEST) - 1.0)
+    if len(entries) == 2:
+        return gap / (2.0 ** min(removed, SLOWEST) - 1.0) if removed > 0.0 else 2.0 * gap
+    passing = abs(entries[-2] - entries[-3]) / 2.0 ** (removed + 1.0)
     if last is None:
-        return gap if gap <= 8.0 * floor else 2.0 * gap
+        return gap if gap <= 8.0 * floor else max(2.0 * gap, passing)
     earlier = measured_exponent(entries[:-1], floor)
     if earlier is not None and last - earlier > STEADY:
-        # Two terms of the error pass each other: the difference is small there and says nothing of what is to come.
-        return max(gap, abs(entries[-2] - entries[-3]) / 2.0 ** (earlier + 2.0 * STEADY))
+        return max(gap, passing)
     coming = last - (1.0 if earlier is None else abs(last - earlier))
     return gap / max(2.0 ** min(coming, SLOWEST) - 1.0, 0.5)
 

@@ -6,7 +6,9 @@ from importlib import import_module
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
+    from continuation.reaching import reach
     from continuation.records import Branch, TurningPoint
+    from continuation.states import states_at, traced_with_states
     from continuation.tracing import first_turning_point as turning_point
     from continuation.tracing import trace
 
@@ -20,7 +22,7 @@ _PLACES = {
     "reach": ("continuation.reaching", "reach"),
 }
 
-__all__ = ["Branch", "TurningPoint", "trace", "turning_point"]
+__all__ = ["Branch", "TurningPoint", "reach", "states_at", "trace", "traced_with_states", "turning_point"]
 
 
 def __getattr__(name: str) -> Any:

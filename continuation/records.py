@@ -79,6 +79,18 @@ class Branch:
             raise KeyError(f"{formula!r} was not measured; measured were {', '.join(self.measures)}")
         return self.measures[formula]
 
+    def to_dataframe(self) -> Any:
+        """A pandas DataFrame with a row for each point: parameter, measures, unstable directions, arclength.
+
+        ImportError where pandas is not there, with what installs it.
+        """
+        try:
+            import pandas
+        except ImportError as error:
+            raise ImportError("to_dataframe needs pandas, which pip install 'hairpin[frames]' brings") from error
+        unstable = {} if self.unstable_directions is None else {"unstable directions": self.unstable_directions}
+        return pandas.DataFrame({self.along: self.parameter, **self.measures, **unstable, "arclength": self.arclength})
+
     def plot(self, measure: str | None = None, axes: Any = None) -> Any:
         """The branch against its parameter on a matplotlib Axes (see `continuation.plot`)."""
         from continuation.plot import draw_branch

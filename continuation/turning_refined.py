@@ -24,8 +24,8 @@ from continuation.turning import DiscreteTurning
 Array = npt.NDArray[np.float64]
 
 # What is 1 in u'' is h^2 in the matrix, whose entries are rounded each for itself: the place where it is singular is only
-# known to about eps N^2/sqrt(N) of the state, the same however often it is solved for. Half of BLUR was seen with a strong flow.
-BLUR = 2.0 * float(np.finfo(float).eps)
+# known to eps N^2/sqrt(N) of the state or worse. How much worse is measured, but once, on the finest grid: this is the least.
+BLUR = float(np.finfo(float).eps)
 SINGULAR_SHIFT = 1e-9  # relative disturbance of the data from which the finest grid is solved a second time
 
 
@@ -92,7 +92,7 @@ def turning_point(setting: Setting, located: DiscreteTurning, position: float, b
             setting, system, located, located.parameter, None, None, (), True, position, branch, located.parameter, {}, {}, notes
         )
 
-    on, even = grids.on, system.of.problem.axis
+    on, even, corners = grids.on, system.of.problem.axis, system.of.problem.corners
 
     def find(intervals: int, known: DiscreteTurning, known_intervals: int) -> DiscreteTurning | str:
         u, null = carried(known.u, intervals, even), carried(known.null, intervals, even)
@@ -110,9 +110,9 @@ def turning_point(setting: Setting, located: DiscreteTurning, position: float, b
     def repeat(found: DiscreteTurning, intervals: int) -> DiscreteTurning:
         disturbed = found.u * (1.0 + SINGULAR_SHIFT * np.cos(np.arange(found.u.size)))
         again = turning.near(on(intervals), disturbed, found.parameter * (1.0 + SINGULAR_SHIFT), found.null, found.curvature, found.scales)
-        return again if isinstance(again, DiscreteTurning) else found
+        again = again if isinstance(again, DiscreteTurning) else found
+        return again if corners else turning.placed_by_values(on(intervals), again)
 
-    corners = system.of.problem.corners
     # At a turning point the parameter has an extremum along the branch: the rounding of the state enters it squared.
     result = refined(
         located, system.grid.intervals, find, values, setting.digits, repeat, corners=corners, rounding=ROUNDING_OF_EXTREME, blur=BLUR
