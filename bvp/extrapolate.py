@@ -53,6 +53,11 @@ def measured_exponent(entries: Sequence[float], floor: float) -> float | None:
     return math.log2(before / after)
 
 
+def highest_likely(removed: float) -> float:
+    """What a first measured exponent may come to at most: series here go up by one power or by two."""
+    return (removed + 2.0 if removed else HIGHEST_FIRST) + SETTLED
+
+
 def usable_exponent(entries: Sequence[float], above: float, floor: float) -> int | None:
     """The whole exponent that the entries follow, greater than `above`; None where they follow none."""
     last = measured_exponent(entries, floor)
@@ -62,7 +67,7 @@ def usable_exponent(entries: Sequence[float], above: float, floor: float) -> int
     if not above < whole <= (HIGHEST if above else HIGHEST_FIRST):
         return None
     gap, earlier = abs(last - whole), measured_exponent(entries[:-1], floor)
-    if (earlier is None and len(entries) > 3) or (earlier is not None and abs(earlier - last) > STEADY):
+    if (earlier is None and (len(entries) > 3 or last > highest_likely(above))) or (earlier is not None and abs(earlier - last) > STEADY):
         return None  # one that only passes by a whole number on its way says nothing
     return whole if gap <= SETTLED else None
 
@@ -74,8 +79,8 @@ def error_of_last(entries: Sequence[float], whole: int | None, floor: float, rem
     is no earlier one. Two entries have no measured exponent, but the powers of a series rise: it is no less than the one
     removed before, `removed`; two at most count here too, for a map of the nodes that is smooth to some order only ends
     the series there. Where the last difference is small because two terms of the error pass each other (its exponent
-    leaps up, or it has changed its sign) it says nothing of what is to come: the difference before counts, with the
-    slowest power that can be left.
+    leaps up, or is higher than any series goes, or its sign has changed) it says nothing of what is to come: the
+    difference before counts, with the slowest power that can be left.
     """
     gap = abs(entries[-1] - entries[-2])
     if whole is not None:
@@ -87,7 +92,7 @@ def error_of_last(entries: Sequence[float], whole: int | None, floor: float, rem
     if last is None:
         return gap if gap <= 8.0 * floor else max(2.0 * gap, passing)
     earlier = measured_exponent(entries[:-1], floor)
-    if earlier is not None and last - earlier > STEADY:
+    if last > highest_likely(removed) if earlier is None else last - earlier > STEADY:
         return max(gap, passing)
     coming = last - (1.0 if earlier is None else abs(last - earlier))
     return gap / max(2.0 ** min(coming, SLOWEST) - 1.0, 0.5)
