@@ -17,6 +17,7 @@ SAFETY = 4.0  # what an estimated truncation error is multiplied by; the campaig
 FAMILIES_SAFETY = 2.0
 ROUGH_SAFETY = 3.0
 SETTLED = 0.15  # how near to a whole number a measured exponent has to be: the next power contributes less than that
+PLAIN = 0.05  # and how near where it is believed at once
 STEADY = 0.75  # how much an exponent may change from grid to grid to be used at all
 HIGHEST = 14
 HIGHEST_FIRST = 4  # no scheme here is of a higher order: what shrinks faster on coarse grids is about to stop doing so,
@@ -58,6 +59,12 @@ def highest_likely(removed: float) -> float:
     return (removed + 2.0 if removed else HIGHEST_FIRST) + SETTLED
 
 
+def _leaps(last: float, earlier: float, earliest: float | None) -> bool:
+    """Whether exponents rise faster and faster: on the way to a power of the series their changes shrink."""
+    change = last - earlier
+    return change > STEADY or (earliest is not None and change > abs(earlier - earliest))
+
+
 def usable_exponent(entries: Sequence[float], above: float, floor: float) -> int | None:
     """The whole exponent that the entries follow, greater than `above`; None where they follow none."""
     last = measured_exponent(entries, floor)
@@ -67,7 +74,11 @@ def usable_exponent(entries: Sequence[float], above: float, floor: float) -> int
     if not above < whole <= (HIGHEST if above else HIGHEST_FIRST):
         return None
     gap, earlier = abs(last - whole), measured_exponent(entries[:-1], floor)
-    if (earlier is None and (len(entries) > 3 or last > highest_likely(above))) or (earlier is not None and abs(earlier - last) > STEADY):
+    if earlier is None:
+        passing = len(entries) > 3 or last > highest_likely(above)
+    else:
+        passing = abs(earlier - last) > STEADY or (gap > PLAIN and _leaps(last, earlier, measured_exponent(entries[:-2], floor)))
+    if passing:
         return None  # one that only passes by a whole number on its way says nothing
     return whole if gap <= SETTLED else None
 
@@ -92,19 +103,38 @@ def error_of_last(entries: Sequence[float], whole: int | None, floor: float, rem
     if last is None:
         return gap if gap <= 8.0 * floor else max(2.0 * gap, passing)
     earlier = measured_exponent(entries[:-1], floor)
-    if last > highest_likely(removed) if earlier is None else last - earlier > STEADY:
+    if last > highest_likely(removed) if earlier is None else _leaps(last, earlier, measured_exponent(entries[:-2], floor)):
         return max(gap, passing)
     coming = last - (1.0 if earlier is None else abs(last - earlier))
     return gap / max(2.0 ** min(coming, SLOWEST) - 1.0, 0.5)
 
 
-def limit_of(entries: Sequence[float], floor: float) -> Limit:
+def powers_of(entries: Sequence[float], floor: float) -> tuple[list[int], bool]:
+    """The powers that the columns follow one after the other, and whether they end in the rounding rather than in doubt."""
+    column, noise = list(entries), floor
+    powers: list[int] = []
+    while len(column) > 2:
+        whole = usable_exponent(column, float(powers[-1]) if powers else 0.0, noise)
+        if whole is None:
+            return powers, abs(column[-1] - column[-2]) <= 8.0 * noise
+        powers.append(whole)
+        column, noise = _without(column, whole), noise * (1.0 + 2.0 / (2.0**whole - 1.0))
+    return powers, True
+
+
+def _without(column: Sequence[float], whole: int) -> list[float]:
+    """The next column: one power of the step removed."""
+    return [after + (after - before) / (2.0**whole - 1.0) for before, after in pairwise(column)]
+
+
+def limit_of(entries: Sequence[float], floor: float, powers: Sequence[int] | None = None) -> Limit:
     """The best limit of one family of halved steps: of all columns that exponents allow, the one with the least error.
 
-    At least two entries.
+    At least two entries. powers : those that may be removed at most, where another family has a say in it.
     """
     column = list(entries)
     order = measured_exponent(column, floor)
+    allowed = powers_of(entries, floor)[0] if powers is None else powers
     removed = 0.0
     best: Limit | None = None
     noise = floor
@@ -112,17 +142,35 @@ def limit_of(entries: Sequence[float], floor: float) -> Limit:
         if len(column) < 2:
             break
         whole = usable_exponent(column, removed, noise)
+        if depth >= len(allowed) or whole != allowed[depth]:
+            whole = None
         error = max(error_of_last(column, whole, noise, removed), noise)
         if best is None or error < best.error:
             best = Limit(column[-1], error, order, depth)
         if whole is None:
             break
-        factor = 2.0**whole - 1.0
-        column = [after + (after - before) / factor for before, after in pairwise(column)]
-        noise *= 1.0 + 2.0 / factor
+        column = _without(column, whole)
+        noise *= 1.0 + 2.0 / (2.0**whole - 1.0)
         removed = float(whole)
     assert best is not None
     return best
+
+
+def common_powers(first: Sequence[float], second: Sequence[float], floor: float) -> list[int]:
+    """The powers that both families show: a series is the scheme's, so that one seen by one family alone is a coincidence.
+
+    Where one family has come down to the rounding the other goes on alone.
+    """
+    (one, one_ended), (other, other_ended) = powers_of(first, floor), powers_of(second, floor)
+    common = []
+    for depth in range(max(len(one), len(other))):
+        if depth < len(one) and depth < len(other):
+            if one[depth] != other[depth]:
+                break
+        elif not (one_ended if depth >= len(one) else other_ended):
+            break
+        common.append(one[depth] if depth < len(one) else other[depth])
+    return common
 
 
 def combined(first: Sequence[float], second: Sequence[float], floor: float, rounding: float = ROUNDING) -> tuple[Limit, float]:
@@ -130,7 +178,8 @@ def combined(first: Sequence[float], second: Sequence[float], floor: float, roun
 
     floor : the rounding of the entries. rounding : the same as a share of the value, where it is known beforehand.
     """
-    one, other = limit_of(first, floor), limit_of(second, floor)
+    powers = common_powers(first, second, floor)
+    one, other = limit_of(first, floor, powers), limit_of(second, floor, powers)
     better = other if other.error <= one.error else one
     apart = abs(one.value - other.value)
     uncertainty = max(SAFETY * better.error, FAMILIES_SAFETY * apart, rounding * abs(better.value), 2.0 * floor)

@@ -18,7 +18,7 @@ from bvp.monitor import roughness
 from continuation.crossing import crossings, distance_of
 from continuation.detect import MOST_HALVINGS, closes, may_dip
 from continuation.moving import carried_point, moved
-from continuation.path import Path, Point
+from continuation.path import Path, Point, turned_round
 from continuation.resolution import resolves
 from continuation.step_length import StepLength
 
@@ -27,6 +27,8 @@ Kept = TypeVar("Kept")
 ROUGH = 0.5  # roughness from which on a finer grid is asked whether the state is real
 ROUGHER = 1.5  # and how much rougher it has to get after a good answer, before it is asked again at once,
 POINTS_BETWEEN = 4  # or after so many points
+MOST_LOOKS = 10  # halvings of a step that is looked into for a hairpin
+TURNED = 0.5  # radians between neighbours in it that show one
 WITHIN = "edge of the range"
 CLOSED = "closed loop"
 STUCK = "no smaller step"
@@ -122,13 +124,29 @@ def _next(path: Path, here: Point, length: float, rule: StepLength) -> tuple[Poi
         if found.ok:
             after = path.point(found, here.arclength + length, here)
             turn = math.acos(max(-1.0, min(here.tangent_to(after), 1.0)))
-            if rule.accepted(turn, found.first):
+            if rule.accepted(turn, found.first) and not _over_hairpin(path, here, after):
                 return after, rule.following(length, turn, found.first, found.steps), ""
             reason = "the branch bends more sharply than the smallest step can follow"
         else:
             reason = found.reason
         length *= rule_after_failure(found.ok)
     return None, length, reason
+
+
+def _over_hairpin(path: Path, before: Point, after: Point) -> bool:
+    """Whether the step went over a hairpin so narrow that its far side looks like a small turn, the tangent taken backwards.
+
+    Where the stability changes and the parameter does not turn back, or the other way round, the step is halved toward
+    the place: over a hairpin the tangent is seen to turn somewhere, over a branch point it never is.
+    """
+    for _ in range(MOST_LOOKS):
+        if not turned_round(before, after):
+            return False
+        middle = _between(path, before, after)
+        if middle is None or min(before.tangent_to(middle), middle.tangent_to(after)) < math.cos(TURNED):
+            return True
+        before, after = (before, middle) if turned_round(before, middle) else (middle, after)
+    return False
 
 
 def rule_after_failure(converged: bool) -> float:

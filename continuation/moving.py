@@ -5,7 +5,7 @@ from __future__ import annotations
 from bvp.adapt import MOST_MOVES, Adaptation, moved_over
 from bvp.discrete_system import DiscreteSystem
 from bvp.newton import Scales
-from continuation.path import Path, Point
+from continuation.path import Path, Point, turned_round
 
 ALONG = 0.9  # cosine between the tangents before and after a move: a branch must not be met from another side, or turned round
 LEAST_SIZE = 1e-100  # of a parameter: its square is still a number
@@ -30,7 +30,7 @@ def moved(path: Path, point: Point, adaptation: Adaptation | None) -> Point:
         found = path.step_from(base, 0.0)
         before, path.began = path.began, (began, path.began[1])
         landed = path.point(found, point.arclength, base) if found.ok else None
-        if landed is None or not landed.tangent_to(base) >= ALONG:
+        if landed is None or not landed.tangent_to(base) >= ALONG or turned_round(point, landed):
             path.system, path.began = old, before
             break
         point = landed

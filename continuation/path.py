@@ -14,6 +14,7 @@ import numpy.typing as npt
 
 from bvp.discrete_system import DiscreteSystem
 from bvp.newton import Border, Corrected, Scales, correct
+from bvp.one_state import unstable_directions
 
 Array = npt.NDArray[np.float64]
 
@@ -40,6 +41,19 @@ class Point(NamedTuple):
         own = norm_of(self.tangent, self.pace, self.scales)
         theirs = norm_of(other.tangent, other.pace, self.scales)
         return inner(self.tangent, self.pace, other.tangent, other.pace, self.scales) / (own * theirs)
+
+
+def turned_round(before: Point, after: Point) -> bool | None:
+    """Whether the tangent at a point looks as if the branch had been met from its other side; None where that cannot be told.
+
+    Along a branch the sign of dp times that of the determinant of F_u is the same (Cramer's rule on the bordered matrix),
+    so that the parameter turns back where the number of unstable directions changes by one. Where it does not, either
+    the tangent was taken backwards, as happens over a hairpin, or the step went over a branch point.
+    """
+    counts = unstable_directions(before.found), unstable_directions(after.found)
+    if counts[0] is None or counts[1] is None or before.pace == 0.0 or after.pace == 0.0:
+        return None
+    return (before.pace * after.pace > 0.0) != ((counts[0] - counts[1]) % 2 == 0)
 
 
 def inner(u: Array, p: float, v: Array, q: float, scales: Scales) -> float:

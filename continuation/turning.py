@@ -26,6 +26,7 @@ TOO_FAR = "the turning point is too far from that of the neighbouring grid"
 FIRST_STEP, NARROW = 1e-3, 1e-13  # of halving: the first step to either side, and the width that is small enough
 POLISHED = 1e-12  # of the state: the last correction of the states on the way
 APART = 7e-4  # distance of the places whose values tell where the extremum is: its fourth power is near the rounding over itself
+WITHIN, MOST_NARROWER = 1e-6, 4  # the square of that distance over the size of the hairpin, where places are near enough
 LEVEL = 1e-11  # what is left of the derivative, as a share of the curvature times the state
 
 
@@ -131,14 +132,21 @@ def placed_by_values(system: DiscreteSystem, known: DiscreteTurning) -> Discrete
     """
     path = Path(system, known.u, known.parameter, known.scales)
     base = Point(known.u, known.parameter, known.null, 0.0, 0.0, known.scales, None)  # type: ignore[arg-type]
-    values = []
-    for count in (-2.0, -1.0, 1.0, 2.0):
-        guess = (known.u + count * APART * known.null, known.parameter + 0.5 * known.curvature * (count * APART) ** 2)
-        found = path.step_from(base, count * APART, guess, POLISHED)
-        if not found.ok:
-            return known
-        values.append(found.parameter)
-    slope = (8.0 * (values[2] - values[1]) - (values[3] - values[0])) / (12.0 * APART)
+    apart = APART
+    for _ in range(MOST_NARROWER):
+        rises = []
+        for place in (-2.0 * apart, -apart, apart, 2.0 * apart):
+            rise = 0.5 * known.curvature * place * place
+            found = path.step_from(base, place, (known.u + place * known.null, known.parameter + rise), POLISHED)
+            if not found.ok:
+                return known
+            rises.append(found.parameter - known.parameter)
+        slope = (8.0 * (rises[2] - rises[1]) - (rises[3] - rises[0])) / (12.0 * apart)
+        # The fourth derivative over the second tells how narrow the hairpin is: the places have to lie well within it.
+        fourth = abs(rises[0] + rises[3] - 4.0 * (rises[1] + rises[2])) / abs(known.curvature * apart * apart)
+        if fourth <= 4.0 * WITHIN:
+            break
+        apart *= max(math.sqrt(WITHIN / fourth), 0.05)
     return replace(known, u=known.u - slope / known.curvature * known.null)
 
 

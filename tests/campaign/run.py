@@ -65,14 +65,18 @@ def held_against(statement: Statement, scheme: str, *, grid: str = "adaptive", s
         rows.append({**about, "what": "invented", "why": f"{len(real)} turning points, {len(statement.turning_points)} are there"})
     for value in values:
         assert statement.states is not None
-        met = found[value].states
-        for number, (state, text) in enumerate(zip(met, sorted(statement.states.measured, key=float), strict=False)):
+        left = list(found[value].states)
+        for number, text in enumerate(statement.states.measured):
+            if not left:
+                rows.append({**about, "what": "state not found", "why": "; ".join(found[value].notes)})
+                break
+            # The branch may have a third state at the value, whose truth is not known.
+            state = min(left, key=lambda one: abs(one.measures[statement.measure] - float(text)))
+            left.remove(state)
             uncertainty = state.uncertainty.get(statement.measure)
             rows.append(
                 _row(about, "state", number + 1, state.measures[statement.measure], uncertainty, float(text), statement.states.uncertainty)
             )
-        if len(met) < len(statement.states.measured):
-            rows.append({**about, "what": "state not found", "why": "; ".join(found[value].notes)})
     spent = time.perf_counter() - began
     return [{**row, "seconds": spent / len(rows)} for row in rows]
 

@@ -32,6 +32,14 @@ def test_no_truth_is_missed(statement: Statement) -> None:
             assert values >= len(statement.turning_points)
 
 
+@pytest.mark.parametrize("statement", [one for one in CHOSEN if one.states is not None][2::6], ids=lambda one: one.name)
+def test_no_state_beside_a_turning_point_is_missed(statement: Statement) -> None:
+    rows = held_against(statement, "central")
+    assert not [row for row in rows if row.get("missed") or row["what"] in LOST]
+    assert statement.states is not None
+    assert sum(row["what"] == "state" and row["uncertainty"] is not None for row in rows) == len(statement.states.measured)
+
+
 def test_the_uncertainties_are_not_uselessly_wide() -> None:
     widths = []
     for statement in CHOSEN[::3]:

@@ -120,3 +120,22 @@ def test_ignition_to_extinction_over_five_decades() -> None:
         assert abs(point.value - truth) <= point.uncertainty + 1e-11 * truth
         assert point.uncertainty <= 1e-8 * truth
     assert branch.turning_points[0].value / branch.turning_points[1].value == pytest.approx(1.7e5, rel=0.02)
+
+
+@pytest.mark.parametrize(
+    ("equation", "conditions", "length"),
+    [
+        ("laplacian(u) + lam/(1 - u)^2 = 0", ["9.488*u(L) + u'(L) = 0"], 0.8294),
+        ("div((1.218*x^2 + 1)*(0.2801*u^2 + 0.6563)*grad(u)) + lam/(1 - u)^2 = 0", ["u(L) = 0"], 1.0),
+    ],
+)
+def test_hairpins_narrower_than_a_step_do_not_turn_the_trace_round(equation: str, conditions: list[str], length: float) -> None:
+    """The middle of such a membrane goes one way only along the whole branch, however the parameter winds (change of variable as above)."""
+    disk = Problem(equation, "u", (0, "L"), conditions, {"lam": 0.0, "L": length}, geometry="cylinder")
+    branch = continuation.trace(disk, along="lam", until="max(u) > 0.9995", compiled=False)
+    middle = branch.measure("max(u)")
+    assert branch.ended == "until"
+    assert np.all(np.diff(middle) > 0.0)
+    real = [point for point in branch.turning_points if point.survives]
+    assert len(real) >= 3
+    assert len({round(point.measures["max(u)"], 6) for point in real}) == len(real)  # each once
