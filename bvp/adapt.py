@@ -46,9 +46,12 @@ class Adaptation:
         of = self.plain
         return discretization(of.problem, of.scheme, of.along, uniform=False, compiled=of.compiled)
 
-    def better(self, system: DiscreteSystem, u: Array, parameter: float) -> DiscreteSystem | None:
-        """The system on the grid that a state needs, one move away from its own; None where its own will do."""
-        if system.grid.intervals < FEWEST or (system.grid.uniform and roughness(u) < SMOOTH):
+    def better(self, system: DiscreteSystem, u: Array, parameter: float, rough: float | None = None) -> DiscreteSystem | None:
+        """The system on the grid that a state needs, one move away from its own; None where its own will do.
+
+        rough : the state's roughness, where it is known.
+        """
+        if system.grid.intervals < FEWEST or (system.grid.uniform and (roughness(u) if rough is None else rough) < SMOOTH):
             return None
         shares = self.shares(system, u, parameter)
         largest, mean = float(shares.max()), float(shares.mean())

@@ -11,6 +11,7 @@ import numpy.typing as npt
 
 from bvp.band import ScalarBand
 from bvp.discretize import Discretization
+from bvp.dot import dot
 from bvp.formula import evaluate_all
 from bvp.formula.tree import Name, Node
 from bvp.geometry import EXPONENTS
@@ -158,7 +159,7 @@ class DiscreteSystem:
             return
         self.step[:], self._info[0] = self.band.solve(-rows[0], -border)
         self.tangent[:], self._info[1] = self.band.solve(np.zeros(self.size), 1.0)
-        self._info[2], self._info[3] = np.dot(self.step[1:-1], self.step[1:-1]), np.dot(self.tangent[1:-1], self.tangent[1:-1])
+        self._info[2], self._info[3] = dot(self.step[1:-1], self.step[1:-1]), dot(self.tangent[1:-1], self.tangent[1:-1])
 
     @cached_property
     def band(self) -> ScalarBand:

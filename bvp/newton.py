@@ -14,6 +14,7 @@ import numpy as np
 import numpy.typing as npt
 
 from bvp.discrete_system import DiscreteSystem
+from bvp.dot import dot
 from bvp.ledger import Entry, ledger_in_use
 
 Array = npt.NDArray[np.float64]
@@ -35,7 +36,7 @@ class Border(NamedTuple):
 
     def value(self, u: Array, parameter: float) -> float:
         """How far (u, p) is from satisfying it."""
-        along = self.factor * float(np.dot(self.direction, u - self.anchor)) if self.factor else 0.0
+        along = self.factor * dot(self.direction, u - self.anchor) if self.factor else 0.0
         return along + self.corner * (parameter - self.anchor_parameter) - self.distance
 
 

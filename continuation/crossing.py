@@ -11,6 +11,7 @@ from itertools import pairwise
 import numpy as np
 import numpy.typing as npt
 
+from bvp.dot import dot
 from bvp.newton import Corrected, correct, held_parameter
 from continuation import turning
 from continuation.bracket import Bracket
@@ -44,7 +45,7 @@ def crossings(path: Path, before: Point, after: Point, value: float) -> list[Cor
 def distance_of(base: Point, other: Point) -> float:
     """How far another point is along a point's tangent."""
     border = border_through(base, 0.0)
-    return border.factor * float(np.dot(border.direction, other.u - base.u)) + border.corner * (other.parameter - base.parameter)
+    return border.factor * dot(border.direction, other.u - base.u) + border.corner * (other.parameter - base.parameter)
 
 
 def _closed_in(path: Path, base: Point, left: End, right: End, value: float) -> Corrected | None:

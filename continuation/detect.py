@@ -47,6 +47,9 @@ def may_dip(path: Path, before: Point, after: Point) -> bool:
 
 def closes(start: Point, before: Point, after: Point) -> bool:
     """Whether the step from before to after passes through the branch's first point, in the direction it set out."""
+    near = abs(after.parameter - before.parameter)
+    if min(abs(before.parameter - start.parameter), abs(after.parameter - start.parameter)) > near:
+        return False  # without a look at the states
     scales = start.scales
     gap_before = inner(start.u - before.u, start.parameter - before.parameter, start.tangent, start.pace, scales)
     gap_after = inner(after.u - start.u, after.parameter - start.parameter, start.tangent, start.pace, scales)

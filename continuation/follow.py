@@ -107,9 +107,11 @@ def follow(
         if closed:
             return Followed(points, CLOSED)
         system = path.system
-        here = moved(path, following, adaptation)
+        rough = roughness(following.u)
+        here = moved(path, following, adaptation, rough)
         start = carried_point(start, system, path.system)
-        rough = roughness(here.u)
+        if here is not following:
+            rough = roughness(here.u)
         if rough > suspicious or (rough > ROUGH and len(points) >= again):
             if not resolves(path, here):
                 return Followed(points, COARSE)

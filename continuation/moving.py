@@ -11,14 +11,15 @@ ALONG = 0.9  # cosine between the tangents before and after a move: a branch mus
 LEAST_SIZE = 1e-100  # of a parameter: its square is still a number
 
 
-def moved(path: Path, point: Point, adaptation: Adaptation | None) -> Point:
+def moved(path: Path, point: Point, adaptation: Adaptation | None, rough: float | None = None) -> Point:
     """The point on the grid that its state needs, the path's system changed with it; the same point where the grid will do.
 
-    The state is solved again on each grid, on the hyperplane across the tangent, so that a turning point is no obstacle.
+    rough : the state's roughness, where it is known. The state is solved again on each grid, on the hyperplane across the
+    tangent, so that a turning point is no obstacle.
     """
     for _ in range(MOST_MOVES if adaptation is not None else 0):
         assert adaptation is not None
-        system = adaptation.better(path.system, point.u, point.parameter)
+        system = adaptation.better(path.system, point.u, point.parameter, rough)
         if system is None:
             break
         base = carried_point(point, path.system, system)
@@ -33,7 +34,7 @@ def moved(path: Path, point: Point, adaptation: Adaptation | None) -> Point:
         if landed is None or not landed.tangent_to(base) >= ALONG or turned_round(point, landed):
             path.system, path.began = old, before
             break
-        point = landed
+        point, rough = landed, None
     return point
 
 

@@ -13,6 +13,7 @@ import numpy as np
 import numpy.typing as npt
 
 from bvp.discrete_system import DiscreteSystem
+from bvp.dot import dot
 from bvp.newton import Border, Corrected, Scales, correct
 from bvp.one_state import unstable_directions
 
@@ -38,9 +39,8 @@ class Point(NamedTuple):
 
     def tangent_to(self, other: Point) -> float:
         """The cosine between the tangents of two points, in this point's norm."""
-        own = norm_of(self.tangent, self.pace, self.scales)
-        theirs = norm_of(other.tangent, other.pace, self.scales)
-        return inner(self.tangent, self.pace, other.tangent, other.pace, self.scales) / (own * theirs)
+        theirs = norm_of(other.tangent, other.pace, self.scales)  # its own tangent has the length 1 here
+        return inner(self.tangent, self.pace, other.tangent, other.pace, self.scales) / theirs
 
 
 def turned_round(before: Point, after: Point) -> bool | None:
@@ -59,7 +59,7 @@ def turned_round(before: Point, after: Point) -> bool | None:
 def inner(u: Array, p: float, v: Array, q: float, scales: Scales) -> float:
     """The inner product of two changes (state, parameter); ghosts do not count."""
     nodes = u.size - 2
-    return float(np.dot(u[1:-1], v[1:-1])) / nodes / scales.state**2 + p * q / scales.parameter**2
+    return dot(u[1:-1], v[1:-1]) / nodes / scales.state**2 + p * q / scales.parameter**2
 
 
 def norm_of(u: Array, p: float, scales: Scales) -> float:
@@ -91,10 +91,10 @@ class Path:
         """The sizes of state and parameter here: the way from the beginning, or their own values where these are less."""
         nodes = u.size - 2
         away = (u - self.began[0])[1:-1]
-        state = max(self.travelled.state, math.sqrt(float(np.dot(away, away)) / nodes))
+        state = max(self.travelled.state, math.sqrt(dot(away, away) / nodes))
         change = max(self.travelled.parameter, abs(parameter - self.began[1]))
         self.travelled = Scales(state, change)
-        size = math.sqrt(float(np.dot(u[1:-1], u[1:-1])) / nodes)
+        size = math.sqrt(dot(u[1:-1], u[1:-1]) / nodes)
         return Scales(
             max(min(size, state), STATE_FLOOR * state, self.least.state),
             max(min(abs(parameter), change), PARAMETER_FLOOR * change, self.least.parameter),

@@ -14,6 +14,7 @@ import numpy as np
 import numpy.typing as npt
 
 from bvp.discrete_system import DiscreteSystem
+from bvp.dot import dot
 from bvp.newton import Corrected, Scales, correct
 from continuation.bracket import Bracket
 from continuation.path import Path, Point, border_through, norm_of
@@ -51,7 +52,7 @@ class DiscreteTurning:
 def between(path: Path, before: Point, after: Point) -> DiscreteTurning | None:
     """The turning point between two points of a branch whose paces differ in sign; None where it cannot be closed in on."""
     border = border_through(before, 0.0)
-    far = border.factor * float(np.dot(border.direction, after.u - before.u)) + border.corner * (after.parameter - before.parameter)
+    far = border.factor * dot(border.direction, after.u - before.u) + border.corner * (after.parameter - before.parameter)
     pace_after = _pace_across(after, before)
     if not before.pace * pace_after < 0:
         return None
@@ -76,7 +77,7 @@ def between(path: Path, before: Point, after: Point) -> DiscreteTurning | None:
 def _pace_across(point: Point, base: Point) -> float:
     """dp by the distance along the base's tangent, at another point of the branch."""
     border = border_through(base, 0.0)
-    across = border.factor * float(np.dot(border.direction, point.tangent)) + border.corner * point.pace
+    across = border.factor * dot(border.direction, point.tangent) + border.corner * point.pace
     return point.pace / across
 
 

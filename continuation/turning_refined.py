@@ -11,6 +11,7 @@ import numpy.typing as npt
 
 from bvp.consistency import Consistency
 from bvp.discrete_system import DiscreteSystem
+from bvp.dot import dot
 from bvp.extrapolate import ROUNDING_OF_EXTREME
 from bvp.measures import Measure
 from bvp.one_state import state_of
@@ -214,7 +215,7 @@ def sensitivities(system: DiscreteSystem, located: DiscreteTurning) -> dict[str,
     found = dict(nothing)
     for name in others:
         slope = system.slopes_by(name, located.u, located.parameter)
-        change = -float(np.dot(left[system.band.rows], slope[system.band.rows]))
+        change = -dot(left[system.band.rows], slope[system.band.rows])
         if located.parameter != 0.0 and np.isfinite(change):
             found[name] = float(change * system.values[name] / located.parameter)
     return found
