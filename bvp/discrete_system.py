@@ -98,10 +98,10 @@ class DiscreteSystem:
         for name, (begin, _) in of.tables.items():
             table = of.problem.functions[name].table
             numbers[begin : begin + table.size] = table
-        self._set_scalars(numbers, parameter, list(of.hoisted.scalars))
+        self._set_scalars(numbers, parameter, of.scalars)
         return numbers
 
-    def _set_scalars(self, numbers: Array, parameter: float, scalars: list[Node]) -> None:
+    def _set_scalars(self, numbers: Array, parameter: float, scalars: list[tuple[Node, str, frozenset[str]]]) -> None:
         of = self.of
         values = {**self.values, of.along: parameter}
         step = self._step(values)
@@ -109,8 +109,8 @@ class DiscreteSystem:
         for name in of.problem.parameters:
             numbers[of.number_index[name]] = values[name]
         known: dict[Node, float] = {STEP: step, PART: 1.0 / self.grid.intervals, **{Name(name): value for name, value in values.items()}}
-        for tree in scalars:
-            numbers[of.number_index[of.hoisted.scalars[tree].name]] = scalar_value(tree, known.__getitem__, self._floats)
+        for tree, name, calls in scalars:
+            numbers[of.number_index[name]] = scalar_value(tree, calls, known.__getitem__, self._floats)
 
     def numbers(self, parameter: float) -> Array:
         """All scalars at a value of the traced parameter; the array is the system's own and changes with the next call."""

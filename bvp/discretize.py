@@ -12,7 +12,7 @@ from bvp.formula import cancel, derivative, float_functions
 from bvp.formula.arrays import numpy_functions
 from bvp.formula.tree import Indexed, Name, Node, walk
 from bvp.grid import Grid
-from bvp.hoist import Hoisted, hoist
+from bvp.hoist import Hoisted, calls_in, hoist
 from bvp.problem import Problem
 from bvp.row_kernels import Spelling, generated_module
 from bvp.rows import PLACE, Row, depends_on, rows_of
@@ -45,7 +45,8 @@ class Discretization:
         given = any(hasattr(function, "partials") for function in problem.functions.values())
         self.compiled = compiled and not given
         self.known_consistency: Any = None  # what bvp.consistency found, which costs a few milliseconds
-        self.follows = [tree for tree in self.hoisted.scalars if depends_on(tree, self.along)]
+        self.scalars = [(tree, leaf.name, calls_in(tree)) for tree, leaf in self.hoisted.scalars.items()]
+        self.follows = [scalar for scalar in self.scalars if depends_on(scalar[0], self.along)]
 
     def _hoisted(self, row: Row) -> list[Node]:
         return hoist(row.trees, set(self.problem.parameters), self._grid_names(), self.along, self.hoisted)

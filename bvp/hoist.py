@@ -14,7 +14,8 @@ import numpy as np
 import numpy.typing as npt
 
 from bvp.formula import evaluate, float_functions, mpmath_functions
-from bvp.formula.tree import Binary, Call, Indexed, Name, Node, Number, transform, walk
+from bvp.formula.evaluate import operate
+from bvp.formula.tree import Binary, Call, Indexed, Name, Negative, Node, Number, transform, walk
 from bvp.rows import PART
 from bvp.schemes.scheme import STEP
 
@@ -81,10 +82,25 @@ def hoist(trees: Iterable[Node], parameters: set[str], grid_names: set[str], mov
     return [transform(tree, change) for tree in trees]
 
 
-def scalar_value(tree: Node, value: Callable[[Any], float], functions: Mapping[str, Callable[..., Any]]) -> float:
-    """A scalar, with 40 digits on the way where it holds functions; nan where it has no real value."""
-    calls = [node.function for node in walk(tree) if isinstance(node, Call)]
-    if not calls or not _WITH_DIGITS.issuperset(calls):
+def calls_in(tree: Node) -> frozenset[str]:
+    """The functions that a tree calls."""
+    return frozenset(node.function for node in walk(tree) if isinstance(node, Call))
+
+
+def plain_value(tree: Node, value: Callable[[Any], float]) -> float:
+    """The value of a tree that calls no function, without what sharing subtrees takes."""
+    if isinstance(tree, Number):
+        return tree.value
+    if isinstance(tree, Binary):
+        return float(operate(tree.operator, plain_value(tree.left, value), plain_value(tree.right, value)))
+    return -plain_value(tree.operand, value) if isinstance(tree, Negative) else value(tree)
+
+
+def scalar_value(tree: Node, calls: frozenset[str], value: Callable[[Any], float], functions: Mapping[str, Callable[..., Any]]) -> float:
+    """A scalar, with 40 digits on the way where it holds functions; nan where it has no real value. calls : those functions."""
+    if not calls:
+        return plain_value(tree, value)
+    if not _WITH_DIGITS.issuperset(calls):
         return float(evaluate(tree, value, functions))
     import mpmath
 

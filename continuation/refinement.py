@@ -13,7 +13,7 @@ from typing import Generic, TypeVar
 import numpy as np
 
 from bvp.errors import InputError
-from bvp.extrapolate import ROUNDING, combined, combined_rough
+from bvp.extrapolate import ROUNDING, combined, combined_rough, common_powers
 from bvp.grid import MOST_INTERVALS
 from continuation.records import Refined
 
@@ -112,7 +112,7 @@ def refined(
     )
     failures = {count: reason for count in grids if (reason := visit(count)) is not None}
     level = LEVELS
-    outcome = _extrapolated(families, values, {}, rough, rounding)
+    outcome = _extrapolated(families, values, {}, rough, rounding, corners)
     while level < MOST_LEVELS and (outcome is None or not _enough(outcome, digits)):
         finer = [family.coarsest << level for family in families]
         if finer[0] > min(most, MOST_INTERVALS):
@@ -121,7 +121,9 @@ def refined(
         if len([count for count in finer if count in failures]) == 2 and level >= LEVELS + 2:
             break
         level += 1
-        outcome = _extrapolated(families, values, {}, rough, rounding) or (outcome if rough else None)  # erratic: one grid may have none
+        outcome = _extrapolated(families, values, {}, rough, rounding, corners) or (
+            outcome if rough else None
+        )  # erratic: one grid may have none
     finest = max(known)
     if outcome is None:
         reason = failures.get(max(failures)) if failures else "too few grids"
@@ -130,11 +132,11 @@ def refined(
     once, again = values(known[finest], finest), measure(repeat(known[finest], finest), finest)
     share = blur * finest**1.5
     floors = {name: max(abs(again[name] - number), share * abs(number) if name else 0.0) for name, number in once.items()}
-    outcome = _extrapolated(families, values, floors, rough, rounding) or outcome
+    outcome = _extrapolated(families, values, floors, rough, rounding, corners) or outcome
     limits, uncertainties, order, entries = outcome
     survives = not rough and _settles(families, values)
     if not survives and corners:
-        limits, uncertainties, order, entries = _extrapolated(families, values, floors, True, rounding) or outcome
+        limits, uncertainties, order, entries = _extrapolated(families, values, floors, True, rounding, corners) or outcome
         survives = (uncertainties[""] or np.inf) <= ROUGH_SETTLED * abs(limits[""])
     if not survives:
         uncertainties = dict.fromkeys(uncertainties)
@@ -155,6 +157,7 @@ def _extrapolated(
     floors: Mapping[str, float],
     rough: bool,
     rounding: float,
+    corners: str,
 ) -> Outcome | None:
     runs = [family.run() for family in families]
     if any(len(run) < 3 for run in runs):
@@ -168,12 +171,14 @@ def _extrapolated(
         if not all(np.all(np.isfinite(column)) for column in columns):
             limits[name], uncertainties[name] = float("nan"), None
             continue
+        floor = floors.get(name, 0.0)
+        entries_of_all = {count: float(numbers[name]) for one in taken for count, numbers in one.items()}
         if rough:
-            limit, uncertainty = combined_rough(
-                {count: float(numbers[name]) for one in taken for count, numbers in one.items()}, floors.get(name, 0.0)
-            )
+            limit, uncertainty = combined_rough(entries_of_all, floor)
         else:
-            limit, uncertainty = combined(columns[0], columns[1], floors.get(name, 0.0), ROUNDING if name else rounding)
+            limit, uncertainty = combined(columns[0], columns[1], floor, ROUNDING if name else rounding)
+            if corners and not common_powers(columns[0], columns[1], floor):  # the corner lies elsewhere between the nodes of each grid
+                uncertainty = max(uncertainty, combined_rough(entries_of_all, floor)[1])
         limits[name], uncertainties[name] = limit.value, uncertainty
         if not name:
             order = limit.order

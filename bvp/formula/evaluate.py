@@ -34,7 +34,7 @@ def evaluate_all(
         if isinstance(node, Number):
             done[node] = number(node.value)
         elif isinstance(node, Binary):
-            done[node] = _operate(node.operator, done[node.left], done[node.right])
+            done[node] = operate(node.operator, done[node.left], done[node.right])
         elif isinstance(node, Negative):
             done[node] = -done[node.operand]
         elif isinstance(node, Call) and node.function in functions:
@@ -45,7 +45,8 @@ def evaluate_all(
     return [done[tree] for tree in trees]
 
 
-def _operate(operator: str, left: Any, right: Any) -> Any:
+def operate(operator: str, left: Any, right: Any) -> Any:
+    """left operator right, for numbers, arrays and whatever else has the operators."""
     if operator == "+":
         return left + right
     if operator == "-":
