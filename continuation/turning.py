@@ -27,6 +27,7 @@ TOO_FAR = "the turning point is too far from that of the neighbouring grid"
 FIRST_STEP, NARROW = 1e-3, 1e-13  # of halving: the first step to either side, and the width that is small enough
 POLISHED = 1e-12  # of the state: the last correction of the states on the way
 APART = 7e-4  # distance of the places whose values tell where the extremum is: its fourth power is near the rounding over itself
+PROBE, NARROWEST = 1e-4, 1e-6  # distances over which a slope of the derivative is measured
 WITHIN, MOST_NARROWER = 1e-6, 4  # the square of that distance over the size of the hairpin, where places are near enough
 LEVEL = 1e-11  # what is left of the derivative, as a share of the curvature times the state
 
@@ -66,7 +67,8 @@ def between(path: Path, before: Point, after: Point) -> DiscreteTurning | None:
         found = path.step_from(before, distance, (u + share * (other - u), parameter + share * (next_parameter - parameter)), POLISHED)
         if not found.ok:
             return None
-        slope = bracket.slope
+        if slope == 0.0 or bracket.width > NARROWEST * abs(far):  # of two places next to each other it would be rounding alone
+            slope = bracket.slope
         small = abs(found.pace) * abs(far) <= 1e-15 * before.scales.parameter and abs(found.pace / slope) < 1e-8
         if small or abs(found.pace) <= LEVEL * abs(slope) or bracket.width <= 1e-13 * abs(far):
             break
@@ -109,6 +111,8 @@ def near(system: DiscreteSystem, u: Array, parameter: float, null: Array, curvat
             measured = (found.pace - last[1]) / (distance - last[0])
             slope = measured if math.isfinite(measured) and measured != 0.0 and abs(distance - last[0]) > 1e-7 else slope
         move = -found.pace / slope
+        if last is None and abs(move) <= 1e-7:
+            move = math.copysign(PROBE, move)  # the slope is another grid's so far, and nothing has shown that it is right
         if abs(move) <= LEVEL or (abs(move) <= 1e-7 and abs(move) >= smallest):
             if found.last > LEVEL and not fresh:  # the pace is that of the state before Newton's last correction
                 fresh, guess = True, (found.u, found.parameter)
