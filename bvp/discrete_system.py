@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping
 from functools import cached_property
 from typing import Any
@@ -146,7 +147,7 @@ class DiscreteSystem:
             self.tangent,
             self._info,
         )
-        if self._info[4] > 0:
+        if self._info[4] > 0 or not math.isfinite(self._info[2]):  # a pivot that is zero leaves no number to compare
             self._sweep_with_pivoting(u, parameter, direction, factor, corner, border)
         return self._info
 

@@ -96,14 +96,15 @@ def correct(
     tolerance: float = 1e-9,
     most_steps: int = 12,
     smallest_damping: float = 1.0 / 16.0,
+    monotone: bool = True,
 ) -> Corrected:
     """Newton's method from (u, parameter) to the state that also satisfies the border row.
 
     Ends with ok where the next correction would be below `tolerance` in the norm of `scales`, else with a reason. The
-    arrays given are not changed.
+    arrays given are not changed. monotone = False takes every step whose correction is finite, shrinking or not.
     """
     ledger = ledger_in_use()
-    how = {"tolerance": tolerance, "most_steps": most_steps, "smallest_damping": smallest_damping}
+    how = {"tolerance": tolerance, "most_steps": most_steps, "smallest_damping": smallest_damping, "monotone": monotone}
     if ledger is None:
         return _corrected(system, u, parameter, border, scales, **how)
     key = (float(system.size), float(parameter), float(border.distance), float(tolerance))
@@ -124,6 +125,7 @@ def _corrected(
     tolerance: float,
     most_steps: float,
     smallest_damping: float,
+    monotone: float,
 ) -> Corrected:
     nodes = system.grid.intervals + 1
     u = u.copy()
@@ -175,7 +177,7 @@ def _corrected(
             info = system.sweep(trial, moved, border.direction, border.factor, border.corner, remaining)
             sweeps += 1
             after = scales.size(info[2], nodes, info[0])
-            if math.isfinite(after) and (after <= (1.0 - damping / 4.0) * norm or (after < ROUNDING and damping == 1.0)):
+            if math.isfinite(after) and (not monotone or after <= (1.0 - damping / 4.0) * norm or (after < ROUNDING and damping == 1.0)):
                 break
             damping /= 2.0
             if damping < smallest_damping:

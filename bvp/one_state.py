@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import replace
+from typing import Any
 
 import numpy as np
 import numpy.typing as npt
@@ -50,7 +51,7 @@ def solve(
     system = discretization(stated, scheme, along, uniform=used.uniform, compiled=compiled).on(used, stated.parameters)
     parameter = stated.parameters.get(system.of.along, 0.0)
     start = system.guess(parameter) if guess is None else np.asarray(guess.nodal if isinstance(guess, State) else guess, dtype=float)
-    found = solved(system, start, parameter)
+    found = solved(system, start, parameter, insist=True)
     adapting = adaptation(stated, scheme, along, intervals, compiled) if grid == "adaptive" else None
     if adapting is not None:
         system, found = _settled(adapting, system, found)
@@ -78,21 +79,21 @@ def _settled(adapting: Adaptation, system: DiscreteSystem, found: Corrected) -> 
     return system, found._replace(ok=False, reason=f"the state is not resolved: its nodes still move after {MOST_MOVES} grids")
 
 
-def solved(system: DiscreteSystem, u: Array, parameter: float) -> Corrected:
-    """Newton's method at a fixed parameter from a profile, damped as far as it takes."""
+def solved(system: DiscreteSystem, u: Array, parameter: float, insist: bool = False) -> Corrected:
+    """Newton's method at a fixed parameter from a profile, damped as far as it takes.
+
+    insist : where corrections no longer shrink, which far from a state says little, it is gone through again without
+    that test; steps are then shortened only where the equations have no value.
+    """
     spread = float(np.sqrt(np.mean(u[1:-1] ** 2)))
     scale = max(spread, 1e-3 * _first_step(system, u, parameter), 1e-300)
-    scales = Scales(scale, max(abs(parameter), 1.0))
-    return correct(
-        system,
-        u,
-        parameter,
-        held_parameter(system, parameter),
-        scales,
-        tolerance=POLISHED,
-        most_steps=MOST_STEPS,
-        smallest_damping=2.0**-20,
-    )
+    how: dict[str, Any] = {"tolerance": POLISHED, "most_steps": MOST_STEPS, "smallest_damping": 2.0**-20}
+    scales, border = Scales(scale, max(abs(parameter), 1.0)), held_parameter(system, parameter)
+    found = correct(system, u, parameter, border, scales, **how)
+    if found.ok or not insist:
+        return found
+    again = correct(system, u, parameter, border, scales, monotone=False, **how)
+    return again if again.ok else found
 
 
 def _first_step(system: DiscreteSystem, u: Array, parameter: float) -> float:

@@ -24,12 +24,12 @@ def first_state(system: DiscreteSystem, parameter: float, guess: Array | None) -
     Where no guess was given and zero leads nowhere, as with temperatures in kelvin, the line through what the conditions
     say of the ends is tried too, looked for from zero, from the sizes of the parameters and from inside measured tables.
     """
-    found = solved(system, system.guess(parameter) if guess is None else guess, parameter)
+    found = solved(system, system.guess(parameter) if guess is None else guess, parameter, insist=True)
     if found.ok or guess is not None or system.of.unknown in system.of.problem.initial_guess:
         return found
     for level in levels(system):
         line = between_ends(system, parameter, level)
-        again = solved(system, line, parameter) if line is not None else None
+        again = solved(system, line, parameter, insist=True) if line is not None else None
         if again is not None and again.ok:
             return again
     return found

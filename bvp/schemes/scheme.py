@@ -14,7 +14,7 @@ from typing import TYPE_CHECKING
 
 from bvp.errors import SchemeError, nearest
 from bvp.formula import parse
-from bvp.formula.tree import Indexed, Name, Node, transform, walk
+from bvp.formula.tree import Indexed, Name, Node, Relation, transform, walk
 
 if TYPE_CHECKING:
     import numpy as np
@@ -25,6 +25,7 @@ if TYPE_CHECKING:
 STEP = Name("#step")  # the step of a uniform grid, a leaf that nobody can type
 FORMULA_KEYS = ("denominator", "flux", "volume", "axis", "first", "end", "source", "right_hand_side", "equation")
 KEYS = (*FORMULA_KEYS, "replace")
+EQUATIONS = ("equation", "axis")  # the keys whose formula may be an equation with two sides
 
 
 PLACES_OF_KEYS = {  # formulas without a place would be ignored in silence, and the scheme taken for another one
@@ -77,6 +78,8 @@ class Scheme:
         self.used.add(key)
         place = f"{self.origin or self.name}, {key}"
         tree = parse(text, "scheme", problem.vocabulary, place)
+        if key not in EQUATIONS:
+            refuse_relation(tree, text, place)
         return in_names_of(tree, problem, unknown)
 
     def replaced_terms(self, problem: Problem, unknown: str) -> list[tuple[Node, Node]]:
@@ -91,6 +94,8 @@ class Scheme:
         for term, text in self.replacements.items():
             place = f"{self.origin or self.name}, replace"
             left, right = parse(term, "equation", stand_ins, place), parse(text, "scheme", own, place)
+            refuse_relation(left, term, place)
+            refuse_relation(right, text, place)
             pairs.append((in_names_of(left, problem, unknown), in_names_of(right, problem, unknown)))
         return pairs
 
@@ -171,6 +176,14 @@ def at_node(tree: Node, offset: int, problem: Problem) -> Node:
 def shifted(tree: Node, offset: int) -> Node:
     """A formula of nodal values moved by whole nodes."""
     return transform(tree, lambda node: Indexed(node.name, node.offset + offset) if isinstance(node, Indexed) else None)
+
+
+def refuse_relation(tree: Node, text: str, place: str) -> None:
+    """SchemeError where a formula that has to be a value is an equation."""
+    if isinstance(tree, Relation):
+        raise SchemeError(
+            f'{place}: "{text}" is an equation.\nExpected: a value, with no "=" in it; an equation stands under "equation" or "axis".'
+        )
 
 
 def check_typed(name: str, keys: Mapping[str, object], origin: str) -> None:
