@@ -19,15 +19,17 @@ from bvp.resample import carried, resampled
 
 Array = npt.NDArray[np.float64]
 
+ROUNDING = 1e-13  # of the profile, below which nothing is said
 COLUMNS = 3  # halvings of the step, from N/8 to N
-SETTLED = 0.35  # how near to a whole number the exponent of the largest differences has to be
+SETTLED = (0.3, 0.6)  # how near to a whole number the exponents of the largest differences have to be, from the finest on
+SAFETY = 4.0  # times what the last column has added
 
 
-def extrapolated(system: DiscreteSystem, found: Corrected) -> tuple[Array, float]:
+def extrapolated(system: DiscreteSystem, found: Corrected) -> tuple[Array, float | None]:
     """The profile at the nodes of the system's grid, no ghosts, and an estimate of its largest error.
 
-    The estimate is twice what the last column used has added; where no exponent settles nothing is added, and it is the
-    difference of the two finest grids.
+    The estimate is four times what the last column used has added. Where no exponent settles nothing is added and there is no
+    estimate, None: the grids are then too coarse to say how far off they are.
     """
     even = system.of.problem.axis
     intervals = system.grid.intervals
@@ -48,15 +50,15 @@ def extrapolated(system: DiscreteSystem, found: Corrected) -> tuple[Array, float
     while len(column) >= 3:
         differences = [fine[::2] - coarse for fine, coarse in itertools.pairwise(column)]
         sizes = [float(np.max(np.abs(one))) for one in differences]
-        exponent = math.log2(sizes[1] / sizes[0]) if sizes[0] > 0.0 and sizes[1] > 0.0 else 0.0
-        order = round(exponent)
-        if not (order > last and abs(exponent - order) <= SETTLED):
+        if not all(sizes):
+            break
+        exponents = [math.log2(coarse / fine) for fine, coarse in itertools.pairwise(sizes)]
+        order = round(exponents[0])
+        if not (order > last and all(abs(exponent - order) <= bound for exponent, bound in zip(exponents, SETTLED, strict=False))):
             break
         added = [one / (2.0**order - 1.0) for one in differences]
         ratio = (added[0].size - 1) / (finest.size - 1)
         total += resampled(added[0], ratio * np.arange(finest.size, dtype=np.float64), even)
-        error, last = 2.0 * float(np.max(np.abs(added[0]))), order
+        error, last = SAFETY * float(np.max(np.abs(added[0]))), order
         column = [fine[::2] + one for fine, one in zip(column, added, strict=False)]
-    if not np.isfinite(error):
-        error = float(np.max(np.abs(profiles[0][::2] - profiles[1]))) if len(profiles) > 1 else math.nan
-    return total, error
+    return (total, max(error, ROUNDING * float(np.max(np.abs(total))))) if np.isfinite(error) else (total, None)
