@@ -11,10 +11,10 @@ from dataclasses import dataclass
 
 from bvp.errors import SchemeError
 from bvp.formula import derivative, write
-from bvp.formula.tree import Binary, Call, Name, Negative, Node, Number, Prime, transform, walk
+from bvp.formula.tree import Binary, Call, Name, Node, Number, Prime, transform, walk
 from bvp.geometry import power
-from bvp.problem import Equation, Problem
-from bvp.schemes.difference import minus, node_value, over
+from bvp.problem import Equation
+from bvp.schemes.difference import HALF, minus, node_value, over, width
 from bvp.schemes.scheme import STEP, Scheme, Shape, at_node
 
 
@@ -63,11 +63,7 @@ def _over(tree: Node, leading: Node) -> Node:
 
 @dataclass(frozen=True)
 class Fitted(Scheme):
-    """The fitted scheme; uniform grids only."""
-
-    def needs_uniform_grid(self, problem: Problem) -> bool:
-        """Its weights are exact for equal steps."""
-        return True
+    """The fitted scheme; exact on equal steps, and with each step's own weight of second order on smooth maps."""
 
     @property
     def limits(self) -> str:
@@ -75,7 +71,7 @@ class Fitted(Scheme):
         return "the scheme fitted has no value where sqrt(b)*h reaches pi, b the slope of the source: take more intervals"
 
     def row(self, equation: Equation, unknown: str, shape: Shape) -> Node:
-        """((u[k+1] - u[k]) W(p, z) - (u[k] - u[k-1]) W(-p, z))/h^2 + f with p = a h/2, z = b h^2.
+        """((u[k+1] - u[k]) W(p, z)/h - (u[k] - u[k-1]) W(-p, z)/h)/h + f with p = a h/2, z = b h^2, each h its own on a map.
 
         W(p, z) = e^p z/(2 (cosh p - cosh sqrt(p^2 - z))); W(0, z) = z/(4 sin^2(sqrt(z)/2)).
         """
@@ -83,18 +79,23 @@ class Fitted(Scheme):
         problem = shape.problem
         source = at_node(form.source, 0, problem)
         slope = at_node(derivative(form.source, Name(unknown)), 0, problem)
-        scaled = Binary("*", slope, power(STEP, 2))
         up = minus(node_value(unknown, 1), node_value(unknown, 0))
         down = minus(node_value(unknown, 0), node_value(unknown, -1))
         if shape.axis:
             down = minus(node_value(unknown, 0), node_value(unknown, 1))
-        if form.drift == Number(0.0):
+        if form.drift == Number(0.0) and shape.uniform:
+            scaled = Binary("*", slope, power(STEP, 2))
             second = over(minus(up, down), power(STEP, 2))
             return Binary("+", second, Binary("*", source, Call("cardinal", (scaled,))))
-        drift = over(Binary("*", at_node(form.drift, 0, problem), STEP), Number(2.0))
-        weighted_up = Binary("*", up, Call("fit", (drift, scaled)))
-        weighted_down = Binary("*", down, Call("fit", (Negative(drift), scaled)))
-        return Binary("+", over(minus(weighted_up, weighted_down), power(STEP, 2)), source)
+        drift, x = at_node(form.drift, 0, problem), problem.coordinate
+        right = width(x, 0, 1, shape)
+        left, cell = (right, right) if shape.axis else (width(x, -1, 0, shape), width(x, -HALF, HALF, shape))
+
+        def weighted(difference: Node, step: Node, sign: float) -> Node:
+            fit = (Binary("*", Number(0.5 * sign), Binary("*", drift, step)), Binary("*", slope, power(step, 2)))
+            return over(Binary("*", difference, Call("fit", fit)), step)
+
+        return Binary("+", over(minus(weighted(up, right, 1.0), weighted(down, left, -1.0)), cell), source)
 
 
 FITTED = Fitted("fitted", "exact for the equation with its coefficients, and the slope of its source, frozen at each node")

@@ -141,7 +141,7 @@ def dense(system: DiscreteSystem, u: Array, parameter: float, direction: Array, 
     columns = system.band.columns
     matrix = np.zeros((len(used) + 1, n + 1))
     for index, row in enumerate(used):
-        middle = min(max(row, 1), n - 2)
+        middle = min(max(int(row), 1), n - 2)
         matrix[index, middle - 1 : middle + 2] = stored[1:4, row]
         matrix[index, -1] = stored[4, row]
     matrix[-1, :-1] = factor * direction

@@ -11,6 +11,7 @@ from scipy.special import erf
 
 import bvp
 import continuation
+from bvp.grid import Grid
 from bvp.problem import Problem
 from bvp.state import State
 
@@ -80,6 +81,16 @@ def test_fitted_and_upwind_have_no_wiggles(scheme: str, intervals: int, eps: flo
     assert state.ok
     assert np.all(np.diff(state.u) <= 1e-12)  # the exact solution falls from 1 to 0
     if scheme == "fitted":  # exact at the nodes where the coefficients are constant (Il'in 1969; Allen & Southwell 1955, from memory)
+        assert np.max(np.abs(state.u - exact(state.x))) < 1e-11
+
+
+@pytest.mark.parametrize("eps", [1e-1, 1e-3, 1e-6])
+def test_fitted_is_exact_for_a_constant_flow_on_any_map(eps: float) -> None:
+    """Each step has the weight of the exponential itself (Il'in 1969; Scharfetter & Gummel 1969, from memory)."""
+    problem, exact = outflow(eps)
+    for placed in (lambda s: s * (2 - s), lambda s: np.sinh(2 * s) / np.sinh(2), lambda s: s + 0.1 * np.sin(2 * pi * s)):
+        state = bvp.solve(problem, {"eps": eps}, scheme="fitted", grid=Grid(37, placed), compiled=False)
+        assert state.ok
         assert np.max(np.abs(state.u - exact(state.x))) < 1e-11
 
 
