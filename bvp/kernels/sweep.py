@@ -99,7 +99,7 @@ def sweep(u, rows, numbers, left_kind, right_kind, direction, factor, corner, bo
         positive += 1
     if right_kind != FIXED and e > 0.0:
         positive += 1
-    if b == 0.0 or e == 0.0:
+    if abs(b) <= WEAK * abs(c) or abs(e) <= WEAK * abs(d):
         weak += 1
     work[0, first], work[1, first], work[2, first] = c / b, -r / b, q / b
     work[0, last], work[1, last], work[2, last] = d / e, -s / e, p / e
@@ -122,7 +122,7 @@ def sweep(u, rows, numbers, left_kind, right_kind, direction, factor, corner, bo
                 unlike += 1
             loss = a * work[0, i - 1]
             pivot = b - loss
-            if abs(pivot) < WEAK * (abs(b) + abs(loss)):
+            if abs(pivot) < WEAK * (abs(b) + abs(loss) + abs(c)):
                 weak += 1
             if pivot > 0.0:
                 positive += 1
@@ -144,7 +144,7 @@ def sweep(u, rows, numbers, left_kind, right_kind, direction, factor, corner, bo
                 unlike += 1
             loss = c * work[0, k + 1]
             pivot = e - loss
-            if abs(pivot) < WEAK * (abs(e) + abs(loss)):
+            if abs(pivot) < WEAK * (abs(e) + abs(loss) + abs(d)):
                 weak += 1
             if pivot > 0.0:
                 positive += 1

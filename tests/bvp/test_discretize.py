@@ -197,3 +197,20 @@ def test_a_length_that_is_a_parameter_is_the_length_itself(scheme: str, geometry
     assert one.ok
     assert np.max(np.abs(one.x - other.x)) < 1e-15
     assert np.max(np.abs(one.u - other.u)) < 1e-13
+
+
+@pytest.mark.parametrize("intervals", [4, 5, 9])
+@pytest.mark.parametrize("flow", [2.0, -2.0, 0.0])
+def test_a_diagonal_that_all_but_vanishes_is_a_weak_pivot_too(flow: float, intervals: int) -> None:
+    """u'' + b u' + q u = 1 with q h^2 = 2 + 1e-10 and b h = 2, 0 or -2: no elimination has lost anything, yet the pivot is 1e-10."""
+    q = (2.0 + 1e-10) * intervals**2
+    problem = Problem("u'' + b*u' + q*u = 1", "u", (0, 1), ["u(0) = 1", "u'(1) = 0.5"], {"q": q, "b": flow * intervals})
+    system = Discretization(problem, "central", "q", compiled=False).on(Grid(intervals))
+    u = profile(system.size)
+    direction = np.zeros(system.size)
+    direction[1:-1] = np.cos(np.arange(system.size - 2))
+    system.sweep(u, q, direction, 1.0, 0.3, 0.1)
+    matrix, residual = dense(system, u, q, direction, 1.0, 0.3)
+    for found, right in ((system.step, -np.append(residual, 0.1)), (system.tangent, np.append(np.zeros(len(residual)), 1.0))):
+        expected = np.linalg.solve(matrix, right)[:-1]
+        assert np.max(np.abs(found[system.band.columns] - expected)[:-1]) < 1e-9 * np.max(np.abs(expected))
